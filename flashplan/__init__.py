@@ -1,0 +1,1 @@
+"""Plan the comparator array of a flash or subranging A/D converter."""

@@ -1,0 +1,1 @@
+"""All comparators together: mismatch draws, conversion of a signal, undecided comparators."""

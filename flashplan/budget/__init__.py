@@ -1,0 +1,1 @@
+"""How much each comparator may spend: one module per kind of limit."""

@@ -1,0 +1,1 @@
+"""One comparator: its datasheet judged, and later its devices, bench and sizing."""

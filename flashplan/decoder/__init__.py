@@ -1,0 +1,1 @@
+"""Thermometer code to word: gate netlists, one module per scheme, cost, comparison."""

@@ -1,0 +1,1 @@
+"""Pure functions on numbers: linearity, yield, spectrum, intervals, rare events."""

@@ -1,0 +1,1 @@
+"""What is asked: plan and datasheet files as typed, validated objects."""

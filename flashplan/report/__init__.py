@@ -1,0 +1,1 @@
+"""Terminal tables, figures, the page and the files."""

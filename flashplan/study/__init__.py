@@ -1,0 +1,1 @@
+"""Trials in chunks: seeds, workers, checkpoints."""
