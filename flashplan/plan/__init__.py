@@ -1,7 +1,13 @@
 """What is asked: plan and datasheet files as typed, validated objects."""
 
 from flashplan.plan.datasheet import Datasheet
-from flashplan.plan.load import changed_plan, load_cell, load_plan, plan_from_table
+from flashplan.plan.load import (
+    changed_plan,
+    load_cell,
+    load_plan,
+    plan_from_table,
+    with_cell,
+)
 from flashplan.plan.model import Plan
 
 __all__ = [

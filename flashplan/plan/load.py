@@ -51,9 +51,9 @@ def plan_from_table(table: Mapping[str, Any], source: str = "plan") -> Plan:
             raise InputError(
                 f"there is no cell file {file}", f"{source}: comparator.cell"
             )
-        plan = plan.model_copy(update={"datasheet": load_cell(file)})
+        plan = with_cell(plan, load_cell(file))
     elif comparator.datasheet is not None:
-        plan = plan.model_copy(update={"datasheet": comparator.datasheet})
+        plan = with_cell(plan, comparator.datasheet)
     _cross_check(plan)
     return plan
 
@@ -90,7 +90,15 @@ def changed_plan(plan: Plan, changes: Mapping[str, Any]) -> Plan:
                 raise InputError(f"{parent!r} is not a table", f"{plan.source}: {path}")
             place = inner
         place[key] = value
-    return plan_from_table(table, plan.source)
+    changed = plan_from_table(table, plan.source)
+    if any(path.startswith("comparator.") for path in changes):
+        return changed
+    return with_cell(changed, plan.datasheet)
+
+
+def with_cell(plan: Plan, cell: Datasheet) -> Plan:
+    """The same plan with another cell."""
+    return plan.model_copy(update={"datasheet": cell})
 
 
 def read_toml(path: str | Path) -> dict[str, Any]:

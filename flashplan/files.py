@@ -1,0 +1,42 @@
+"""Output files, written whole or not at all."""
+
+import json
+import os
+import tempfile
+from pathlib import Path
+from typing import Any
+
+from flashplan.errors import InputError
+
+
+def write_whole(path: str | Path, content: str | bytes) -> None:
+    """Write a file so that a reader, or an interruption, never meets half of it. Raises InputError."""
+    path = Path(path)
+    data = content.encode() if isinstance(content, str) else content
+    temporary = None
+    try:
+        with tempfile.NamedTemporaryFile(
+            dir=path.parent, prefix=f".{path.name}.", delete=False
+        ) as file:
+            temporary = file.name
+            file.write(data)
+        os.chmod(temporary, 0o666 & ~_umask())
+        os.replace(temporary, path)
+    except OSError as error:
+        raise InputError(
+            f"cannot write the file: {error.strerror or error}", str(path)
+        ) from None
+    finally:
+        if temporary is not None and os.path.exists(temporary):
+            os.unlink(temporary)
+
+
+def as_json(document: dict[str, Any]) -> str:
+    """One JSON document as text; a number that is not finite is an error of ours, not JSON."""
+    return json.dumps(document, indent=2, allow_nan=False, ensure_ascii=False) + "\n"
+
+
+def _umask() -> int:
+    mask = os.umask(0)
+    os.umask(mask)
+    return mask
