@@ -167,9 +167,7 @@ def _emit(
     else:
         from rich.console import Console
 
-        Console(width=None if sys.stdout.isatty() else 100, highlight=False).print(
-            table()
-        )
+        Console(highlight=False).print(table())
     sys.stdout.flush()
 
 

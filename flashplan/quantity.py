@@ -84,6 +84,8 @@ def show(value: float | None, unit: str = "", digits: int = 4) -> str:
         return "-"
     if unit in ("ratio", ""):
         return f"{value:.{digits}g}"
+    if "^" in unit:  # a prefix in front of a power would be misread
+        return f"{value:.{digits}g} {unit}"
     if unit == "lsb":
         return f"{value:.{digits}g} LSB"
     if unit == "db":

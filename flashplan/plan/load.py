@@ -35,7 +35,7 @@ def plan_from_table(table: Mapping[str, Any], source: str = "plan") -> Plan:
     hidden = {"datasheet", "source"} & set(table)
     if hidden:
         raise InputError(
-            f"unknown key{_nearest(min(hidden), Plan)}",
+            f"unknown key{nearest_key(min(hidden), Plan)}",
             f"{source}: {min(hidden)}",
         )
     plan = _validated(Plan, {**table, "source": source}, source)
@@ -132,7 +132,7 @@ def _message(
     path, items = next(iter(problems.items()))
     kind, found = items[0]["type"], items[0]["input"]
     if kind == "extra_forbidden":
-        text = f"unknown key{_nearest(str(path[-1]), _table_at(model, path[:-1]))}"
+        text = f"unknown key{nearest_key(str(path[-1]), _table_at(model, path[:-1]))}"
     elif kind == "missing":
         text = "missing key"
     elif kind in ("model_type", "model_attributes_type"):
@@ -190,7 +190,8 @@ def _table_at(
     return model
 
 
-def _nearest(key: str, model: type[BaseModel] | None) -> str:
+def nearest_key(key: str, model: type[BaseModel] | None) -> str:
+    """End of the message about an unknown key: the nearest known one of that table, or all of them."""
     if model is None:
         return ""
     known = [

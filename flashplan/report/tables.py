@@ -1,0 +1,260 @@
+"""Terminal tables of each verb's result."""
+
+from rich.console import Group, RenderableType
+from rich.padding import Padding
+from rich.table import Table
+from rich.text import Text
+
+from flashplan.array.result import ArrayResult
+from flashplan.budget.explain import Explanation
+from flashplan.budget.result import Budget, BudgetLine
+from flashplan.cell.check import Verdict
+from flashplan.decoder import DecoderTable
+from flashplan.ladder import LadderResult
+from flashplan.plan.model import Plan
+from flashplan.quantity import show
+from flashplan.report.words import (
+    CAUTION,
+    goal_rows,
+    headline,
+    line_origin,
+    verdict_sentence,
+)
+
+_MARK = {True: "met", False: "MISSED", None: "not judged"}
+_STYLE = {True: "green", False: "bold red", None: "yellow"}
+
+
+def mark(met: bool | None) -> Text:
+    """The word for a verdict, in its colour."""
+    return Text(_MARK[met], style=_STYLE[met])
+
+
+def budget_table(budget: Budget) -> RenderableType:
+    """Limits with shares, then the formula and source of each."""
+    converter = budget.plan.converter
+    table = _table("quantity", "limit", "in LSB", "share", "set by")
+    for line in budget.lines.values():
+        table.add_row(
+            line.name,
+            _limit(line),
+            _in_lsb(line, budget.lsb),
+            _share(line.share),
+            line_origin(line),
+        )
+    origins = [Text()]
+    for line in budget.lines.values():
+        origins.append(Text.assemble((line.name, "bold"), " = ", line.formula))
+        origins.append(Padding(Text(line.source, style="dim"), (0, 0, 0, 4)))
+        if line.note:
+            origins.append(Padding(Text(line.note, style="dim"), (0, 0, 0, 4)))
+    title = Text(
+        f"{converter.name}: {converter.bits} bits, {show(converter.sample_rate, 'Hz')}, {budget.comparators} comparators,"
+        f" LSB {show(budget.lsb, 'V')}\n"
+        f"error power: {budget.ideal_error_lsb2:.4f} LSB^2 ideal, {budget.allowed_error_lsb2:.4f} LSB^2 allowed"
+        f" by {budget.plan.goals.enob:g} effective bits"
+    )
+    return Group(title, table, *origins, _caution())
+
+
+def explanation_table(explanation: Explanation) -> RenderableType:
+    """One line with its inputs and what moves it."""
+    line = explanation.line
+    inputs = _table("input", "value")
+    for name, given in line.inputs.items():
+        value = (
+            given.value
+            if isinstance(given.value, str)
+            else show(given.value, given.unit)
+        )
+        inputs.add_row(name, value)
+    moves = _table("limit moves with", "percent per percent")
+    for s in explanation.sensitivities:
+        moves.add_row(s.key, f"{s.elasticity:+.3g}")
+    head = [
+        Text.assemble((line.name, "bold"), f" at most {_limit(line)}"),
+        Text(f"formula: {line.formula}"),
+        Text(f"source: {line.source}"),
+    ]
+    if line.candidates:
+        held = ", ".join(
+            f"{name} {show(value, line.unit)}"
+            for name, value in line.candidates.items()
+        )
+        head.append(Text(f"candidates: {held}; set by {line.binding}"))
+    if line.note:
+        head.append(Text(f"note: {line.note}"))
+    return Group(*head, inputs, moves)
+
+
+def verdict_table(verdict: Verdict) -> RenderableType:
+    """Limit, value and margin of each quantity, the verdict first."""
+    table = _table("quantity", "limit", "value", "margin", "", "verdict")
+    for line in verdict.lines.values():
+        known = (
+            line.margin is not None
+            and line.limit is not None
+            and line.value is not None
+        )
+        table.add_row(
+            line.name,
+            show(line.limit, line.unit),
+            show(line.value, line.unit),
+            show(line.limit - line.value, line.unit, 3) if known else "-",  # type: ignore[operator]
+            f"{line.margin:+.1%}" if line.margin is not None else "-",
+            mark(line.met),
+        )
+    return Group(
+        Text(verdict_sentence(verdict), style=_STYLE[verdict.met]), table, _caution()
+    )
+
+
+def ladder_table(result: LadderResult) -> RenderableType:
+    """Worst tap of each effect."""
+    table = _table("effect", "largest error", "at tap", "rms over taps")
+    for name, errors in result.effects_lsb().items():
+        if errors is None:
+            table.add_row(name, "not known", "-", "-")
+            continue
+        worst = int(abs(errors).argmax())
+        rms = float((abs(errors) ** 2).mean() ** 0.5)
+        table.add_row(
+            name,
+            show(float(errors[worst]), "lsb", 3),
+            str(worst + 1),
+            show(rms, "lsb", 3),
+        )
+    return Group(*(Text(line) for line in result.summary()), table, _caution())
+
+
+def array_table(plan: Plan, result: ArrayResult) -> RenderableType:
+    """Goals first, then what was simulated."""
+    goals = _table("goal", "asked", "reached", "verdict")
+    for row in goal_rows(plan, result):
+        goals.add_row(row.name, row.asked, row.reached, mark(row.met))
+    facts = _table("quantity", "value", "interval or spread over arrays")
+    if result.static is not None:
+        s = result.static
+        facts.add_row(
+            f"yield of {s.arrays} drawn arrays",
+            f"{s.passed / s.arrays:.4f}",
+            f"{s.yield_interval.low:.4f} to {s.yield_interval.high:.4f} (95 %)",
+        )
+        facts.add_row("exact yield", f"{s.exact_yield:.6f}", "to quadrature")
+        summary = s.to_dict()
+        for key, name in (("dnl_lsb", "largest |DNL|"), ("inl_lsb", "largest |INL|")):
+            p = summary[key]
+            facts.add_row(
+                name,
+                f"{p['p50']:.3f} LSB median",
+                f"95 % of arrays below {p['p95']:.3f} LSB",
+            )
+    if result.dynamic is not None:
+        d = result.dynamic
+        facts.add_row(
+            "input",
+            show(d.frequency, "Hz", 6),
+            f"{d.arrays} arrays of {d.samples} samples",
+        )
+        facts.add_row("SNDR", f"{d.sndr_db:.2f} dB", "mean error power")
+        facts.add_row("SFDR", f"{d.sfdr_db:.1f} dB", "mean over arrays")
+        facts.add_row(
+            "ENOB",
+            f"{d.enob:.3f}",
+            f"{d.enob_interval.low:.3f} to {d.enob_interval.high:.3f} (95 %)",
+        )
+        facts.add_row(
+            f"ENOB of {plan.goals.yield_:.4g} of arrays",
+            f"{d.enob_low:.3f}",
+            f"{d.enob_low_interval.low:.3f} to {d.enob_low_interval.high:.3f} (95 %)",
+        )
+        facts.add_row(
+            "words with a bubble",
+            f"{d.bubble_rate:.3g}",
+            f"{d.bubble_rate_interval.low:.2g} to {d.bubble_rate_interval.high:.2g} (95 %)",
+        )
+        orders = ", ".join(
+            f"{count} of order {order}"
+            for order, count in sorted(d.bubbles_by_order.items())
+        )
+        facts.add_row(
+            "bubbles", orders or "none seen", f"in {d.arrays * d.samples} conversions"
+        )
+    if result.word_error_rate is not None:
+        facts.add_row(
+            "word error rate",
+            f"{result.word_error_rate:.3g}",
+            "closed form, per conversion",
+        )
+    for name, value in result.power.items():
+        facts.add_row(
+            f"power: {name}", show(value, "W"), "" if value is not None else "not known"
+        )
+    notes = [Text(headline(plan, result), style="bold")]
+    if result.left_out:
+        notes.append(
+            Text(
+                f"left out, since the datasheet does not give it: {', '.join(result.left_out)}",
+                style="yellow",
+            )
+        )
+    return Group(*notes, goals, facts, _caution())
+
+
+def decoder_table(decoders: DecoderTable) -> RenderableType:
+    """All schemes on the same words."""
+    table = _table(
+        "scheme",
+        "gates",
+        "depth",
+        "rms error",
+        "max",
+        "wrong words",
+        "undecided rms",
+        "max",
+    )
+    for row in decoders.to_dict()["schemes"]:
+        table.add_row(
+            row["name"],
+            str(row["gates"]),
+            str(row["depth"]),
+            _number(row["rms_error_lsb"]),
+            _number(row["max_error_lsb"]),
+            _number(row["wrong_word_rate"]),
+            _number(row["undecided_rms_error_lsb"]),
+            _number(row["undecided_max_error_lsb"]),
+        )
+    return Group(
+        table,
+        Text("errors in LSB against the number of thresholds passed", style="dim"),
+        _caution(),
+    )
+
+
+def _table(*columns: str) -> Table:
+    table = Table(box=None, pad_edge=False, header_style="bold", padding=(0, 2, 0, 0))
+    for index, column in enumerate(columns):
+        table.add_column(column, overflow="fold", no_wrap=index == 0)
+    return table
+
+
+def _limit(line: BudgetLine) -> str:
+    return "not limited" if line.limit is None else show(line.limit, line.unit)
+
+
+def _in_lsb(line: BudgetLine, lsb: float) -> str:
+    return (
+        f"{line.limit / lsb:.3g}" if line.unit == "V" and line.limit is not None else ""
+    )
+
+
+def _share(share: float | None) -> str:
+    return "" if share is None else f"{share:.0%}"
+
+
+def _number(value: float | None) -> str:
+    return "-" if value is None else f"{value:.3g}"
+
+
+def _caution() -> RenderableType:
+    return Text(CAUTION, style="dim")
