@@ -16,7 +16,7 @@ from flashplan.metrics.bubbles import count_bubbles_by_order
 from flashplan.metrics.ideal import enob_from_sndr
 from flashplan.metrics.intervals import wilson_interval
 from flashplan.metrics.pinned_walk import walk_power, walk_spectrum
-from flashplan.metrics.spectrum import coherent_frequency, sine_metrics
+from flashplan.metrics.spectrum import coherent_frequency, power_spectrum, sine_metrics
 from flashplan.metrics.static_run import draw_threshold_errors
 from flashplan.plan.datasheet import Datasheet
 from flashplan.plan.model import Plan
@@ -81,7 +81,7 @@ class OneArray:
             else np.zeros((0, plan.comparators), dtype=bool)
         )
         metrics = sine_metrics(codes[None].astype(float), cycles)
-        power = np.abs(np.fft.rfft(codes - codes.mean())) ** 2
+        power = power_spectrum(codes - codes.mean())
         return {
             "errors": errors,
             "skew": skew,

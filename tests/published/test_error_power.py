@@ -8,7 +8,7 @@ from flashplan.budget.shares import hysteresis_limit, noise_limit, timing_limit
 from flashplan.metrics.ideal import (
     enob_from_sndr,
     ideal_error_power_lsb2,
-    ideal_powers,
+    ideal_signal_amplitude_lsb,
     ideal_sndr_db,
     sndr_from_enob,
 )
@@ -37,7 +37,7 @@ def test_the_ideal_quantiser_is_what_numpy_fft_measures(bits: int) -> None:
     power = 2 * np.abs(np.fft.rfft(codes - codes.mean()) / samples) ** 2
     signal = power[cycles]
     error = power.sum() - signal
-    assert ideal_powers(bits)[0] == pytest.approx(signal, rel=2e-4)
+    assert ideal_signal_amplitude_lsb(bits) ** 2 / 2 == pytest.approx(signal, rel=2e-4)
     assert ideal_error_power_lsb2(bits) == pytest.approx(error, rel=2e-3)
     assert ideal_sndr_db(bits) < sndr_from_enob(bits)
 
