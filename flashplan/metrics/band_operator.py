@@ -2,7 +2,7 @@
 
 from collections.abc import Iterable
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -73,7 +73,7 @@ def band_matrix(panels: Panels, lower: Array, upper: Array) -> Array:
     return matrix
 
 
-@lru_cache(maxsize=None)
+@cache
 def gauss_legendre(order: int) -> tuple[Array, Array, Array]:
     """Nodes and weights on [-1, 1], and the matrix from values at the nodes to Legendre coefficients."""
     nodes, weights = np.polynomial.legendre.leggauss(order)

@@ -1,10 +1,9 @@
 """Distributions that one comparator's offset may have: a density and both its tails."""
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Any, Protocol
 
 import numpy as np
-from numpy.typing import NDArray
 from scipy.special import erfc, ndtr
 
 # Probability beyond `reach` on either side: far below the smallest yield loss that is kept.

@@ -20,6 +20,7 @@ from flashplan.report.words import (
     line_origin,
     verdict_sentence,
 )
+from flashplan.sweep import SweepResult
 
 _MARK = {True: "met", False: "MISSED", None: "not judged"}
 _STYLE = {True: "green", False: "bold red", None: "yellow"}
@@ -227,6 +228,46 @@ def decoder_table(decoders: DecoderTable) -> RenderableType:
     return Group(
         table,
         Text("errors in LSB against the number of thresholds passed", style="dim"),
+        _caution(),
+    )
+
+
+def sweep_table(result: SweepResult) -> RenderableType:
+    """One row a point; a goal that is missed is marked."""
+    table = _table(
+        *(axis.key.split(".")[-1] for axis in result.axes),
+        "yield",
+        "ENOB",
+        "word errors",
+        "power",
+        "goals",
+    )
+    for point in result.points:
+        varied = [show(point.vary[axis.key], axis.unit) for axis in result.axes]
+        if point.refused:
+            table.add_row(
+                *varied, "-", "-", "-", "-", Text("impossible", style="yellow")
+            )
+            continue
+        missed = [name for name, met in point.goals_met.items() if met is False]
+        open_ = None in point.goals_met.values()
+        verdict = (
+            Text(f"misses {', '.join(missed)}", style="red")
+            if missed
+            else mark(None if open_ else True)
+        )
+        table.add_row(
+            *varied,
+            _number(point.yield_),
+            _number(point.enob_low),
+            _number(point.word_error_rate),
+            show(point.power, "W"),
+            verdict,
+        )
+    reasons = dict.fromkeys(point.refused for point in result.points if point.refused)
+    return Group(
+        table,
+        *(Text(f"impossible: {reason}", style="yellow") for reason in reasons),
         _caution(),
     )
 

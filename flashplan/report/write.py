@@ -1,7 +1,5 @@
 """The report: every room's result in one folder, as page, figures, JSON and CSV."""
 
-import csv
-import io
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -14,7 +12,7 @@ from flashplan.cell.check import Verdict, check_cell
 from flashplan.chain import compare_decoders, simulate_array, solve_ladder
 from flashplan.decoder import DecoderTable
 from flashplan.errors import InputError
-from flashplan.files import as_json, write_whole
+from flashplan.files import as_csv, as_json, write_whole
 from flashplan.ladder import LadderResult
 from flashplan.plan.model import Plan
 from flashplan.report.page import page_sections, render_page
@@ -76,7 +74,7 @@ def write_report(
     for name, document in _documents(results).items():
         write_whole(folder / f"{name}.json", as_json(document))
     for name, (columns, rows) in _tables(results).items():
-        write_whole(folder / f"{name}.csv", _csv(columns, rows))
+        write_whole(folder / f"{name}.csv", as_csv(columns, rows))
     page = folder / "index.html"
     write_whole(page, render_page(results, sections))
     return Written(
@@ -156,11 +154,3 @@ def _tables(
             ),
         )
     return tables
-
-
-def _csv(columns: Sequence[str], rows: Iterable[Sequence[Any]]) -> str:
-    buffer = io.StringIO()
-    writer = csv.writer(buffer, lineterminator="\n")
-    writer.writerow(columns)
-    writer.writerows(["" if cell is None else cell for cell in row] for row in rows)
-    return buffer.getvalue()
