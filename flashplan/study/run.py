@@ -1,13 +1,13 @@
 """Run a study: a task over chunks by index, on any executor, with the same result whoever does the work."""
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Generator, Iterator
 from concurrent.futures import (
     BrokenExecutor,
     Executor,
     Future,
     as_completed,
 )
-from contextlib import ExitStack
+from contextlib import ExitStack, closing
 from pathlib import Path
 from typing import Any
 
@@ -59,7 +59,8 @@ def run_study(
         missing = [index for index in range(chunks) if index not in found]
         stack.callback(progress.end)
         progress.begin(chunks, len(found))
-        for index, result in _results(task, missing, seed, executor):
+        results = stack.enter_context(closing(_results(task, missing, seed, executor)))
+        for index, result in results:
             if kept is not None:
                 kept.keep(index, result)
             found[index] = result
@@ -69,7 +70,7 @@ def run_study(
 
 def _results(
     task: Task, missing: list[int], seed: int, executor: Executor | None
-) -> Iterator[tuple[int, Any]]:
+) -> Generator[tuple[int, Any], None, None]:
     """Yield each missing chunk's index and result as it finishes."""
     if executor is None:
         for index in missing:
@@ -83,15 +84,15 @@ def _results(
         for future in as_completed(tuple(waiting)):
             result = future.result()
             yield waiting.pop(future), result
-    except BrokenExecutor as error:
-        raise InputError(
-            "a worker process died, perhaps for want of memory, or because a script that starts workers lacks "
-            'its `if __name__ == "__main__":`; fewer workers need less memory',
-            "--workers",
-        ) from error
-    except (Exception, KeyboardInterrupt):
+    except (Exception, KeyboardInterrupt) as error:
         # Others may have finished in the moment in which this one failed, or the person's patience ended.
         yield from _finished(waiting)
+        if isinstance(error, BrokenExecutor):
+            raise InputError(
+                "a worker process died, perhaps for want of memory, or because a script that starts workers lacks "
+                'its `if __name__ == "__main__":`; fewer workers need less memory',
+                "--workers",
+            ) from error
         raise
     finally:
         for future in waiting:

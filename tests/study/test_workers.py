@@ -1,5 +1,6 @@
 """Local processes and a cluster do the work of this process, and end with it."""
 
+import contextlib
 import os
 import signal
 import subprocess
@@ -104,10 +105,17 @@ needs_proc = pytest.mark.skipif(
 def test_workers_end_with_their_study(tmp_path: Path, end: signal.Signals) -> None:
     store = tmp_path / "store"
     process, children = _start_hanging(store)
-    assert len(children) >= 2
-    os.kill(process.pid, end)
-    _, errors = process.communicate(timeout=30)  # the hanging chunks would take 600 s
-    assert _all_gone(children)
+    try:
+        assert len(children) >= 2
+        os.kill(process.pid, end)
+        _, errors = process.communicate(timeout=30)  # the chunks would hang for 600 s
+        assert _all_gone(children)
+    except BaseException:  # nothing that hangs is left behind by a test that fails
+        process.kill()
+        for child in children:
+            with contextlib.suppress(ProcessLookupError):
+                os.kill(child, signal.SIGKILL)
+        raise
     assert _kept(store) == {0, 2}
     if end == signal.SIGINT:
         assert errors.rstrip().endswith("KeyboardInterrupt")
