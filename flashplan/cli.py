@@ -100,15 +100,27 @@ def check(
 
 @app.command()
 def array(
-    plan: PlanFile, json: AsJson = False, out: OutFile = None, workers: Workers = 1
+    plan: PlanFile,
+    json: AsJson = False,
+    out: OutFile = None,
+    workers: Workers = 1,
+    at_limits: Annotated[
+        bool,
+        typer.Option(
+            "--at-limits",
+            help="put every comparator and the clock on the budget's limits",
+        ),
+    ] = False,
 ) -> None:
     """Simulate the array: yield, DNL/INL, SNDR/ENOB, bubbles, word errors."""
     import flashplan as fp
     from flashplan.report.tables import array_table
 
     loaded = fp.load_plan(plan)
-    with _progress() as progress:
-        result = fp.simulate_array(loaded, workers=workers, progress=progress)
+    if at_limits:
+        loaded = fp.plan_at_limits(fp.derive_budget(loaded))
+    with _progress() as progress, _executor(workers) as executor:
+        result = fp.simulate_array(loaded, executor=executor, progress=progress)
     _emit(result.to_dict(), lambda: array_table(loaded, result), json, out)
     _judge(all(result.goals_met.values()))
 
@@ -122,8 +134,8 @@ def decoders(
     from flashplan.report.tables import decoder_table
 
     loaded = fp.load_plan(plan)
-    with _progress() as progress:
-        table = fp.compare_decoders(loaded, workers=workers, progress=progress)
+    with _progress() as progress, _executor(workers) as executor:
+        table = fp.compare_decoders(loaded, executor=executor, progress=progress)
     _emit(table.to_dict(), lambda: decoder_table(table), json, out)
 
 
@@ -168,7 +180,7 @@ def sweep(
     loaded, axes = fp.load_plan(plan), [parse_axis(text) for text in vary]
     if figure is not None and len(axes) > 2:
         raise InputError(f"a figure takes one or two axes, not {len(axes)}", "--figure")
-    with _progress("sweep") as progress, _executor(workers, cluster) as executor:
+    with _progress() as progress, _executor(workers, cluster) as executor:
         result = fp.sweep(
             loaded, axes, store=store, executor=executor, progress=progress
         )
@@ -220,9 +232,9 @@ def report(
     import flashplan as fp
 
     folder = Path("reports") / plan.stem if out is None else out
-    with _progress() as progress:
+    with _progress() as progress, _executor(workers) as executor:
         written = fp.write_report(
-            fp.load_plan(plan), folder, workers=workers, progress=progress
+            fp.load_plan(plan), folder, executor=executor, progress=progress
         )
     print(f"{written.headline}\nwrote {written.page}")
     _judge(written.met)
@@ -247,6 +259,12 @@ def _emit(
 
         Console(highlight=False).print(table())
     sys.stdout.flush()
+
+
+def _executor(workers: int, cluster: str | None = None) -> Any:
+    from flashplan.study.workers import study_executor
+
+    return study_executor(workers, cluster)
 
 
 def _progress() -> Any:

@@ -1,6 +1,7 @@
 """The report: every room's result in one folder, as page, figures, JSON and CSV."""
 
 from collections.abc import Iterable, Sequence
+from concurrent.futures import Executor
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -42,11 +43,11 @@ class Results:
 
 
 def gather_results(
-    plan: Plan, workers: int = 1, progress: Progress | None = None
+    plan: Plan, executor: Executor | None = None, progress: Progress | None = None
 ) -> Results:
     """Run every room for a plan and its own cell. Raises InputError."""
     budget = derive_budget(plan)
-    array = simulate_array(plan, workers=workers, progress=progress)
+    array = simulate_array(plan, executor=executor, progress=progress)
     return Results(
         plan=plan,
         budget=budget,
@@ -58,7 +59,10 @@ def gather_results(
 
 
 def write_report(
-    plan: Plan, folder: str | Path, workers: int = 1, progress: Progress | None = None
+    plan: Plan,
+    folder: str | Path,
+    executor: Executor | None = None,
+    progress: Progress | None = None,
 ) -> Written:
     """Write the whole report of a plan into a folder, which is made where it is not there.
 
@@ -66,7 +70,7 @@ def write_report(
     """
     folder = Path(folder)
     _make(folder / "figures")
-    results = gather_results(plan, workers, progress)
+    results = gather_results(plan, executor, progress)
     sections = page_sections(results)
     for section in sections:
         for drawn in section.figures:
