@@ -8,6 +8,7 @@ from flashplan.array.result import ArrayResult
 from flashplan.budget.derive import derive_budget
 from flashplan.budget.reference import resolved
 from flashplan.decoder import DecoderTable
+from flashplan.errors import InputError
 from flashplan.ladder import LadderResult
 from flashplan.measure import MeasureResult, measure_capture, read_capture
 from flashplan.plan.datasheet import Datasheet
@@ -50,7 +51,11 @@ def compare_decoders(
 def measure(codes: str | Path, plan: Plan) -> MeasureResult:
     """Measure and explain a file of captured codes against the plan and its budget. Raises InputError."""
     limits = {name: line.limit for name, line in derive_budget(plan).lines.items()}
-    return measure_capture(read_capture(codes, plan.converter.bits), plan, limits)
+    capture = read_capture(codes, plan.converter.bits)
+    try:
+        return measure_capture(capture, plan, limits)
+    except InputError as error:
+        raise InputError(error.message, error.where or str(codes)) from None
 
 
 def _ready(plan: Plan, cell: Datasheet | None) -> tuple[Plan, Datasheet]:
