@@ -19,6 +19,7 @@ from flashplan.report.words import (
     CAUTION,
     goal_rows,
     headline,
+    ladder_sentence,
     line_origin,
     reasons,
     verdict_sentence,
@@ -138,7 +139,7 @@ def _ladder(results: "Results") -> Section:
     ladder = results.ladder
     return Section(
         "Reference ladder",
-        " ".join(ladder.summary()),
+        ladder_sentence(ladder),
         [
             _drawn(
                 "ladder",

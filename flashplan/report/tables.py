@@ -11,7 +11,7 @@ from flashplan.budget.explain import Explanation
 from flashplan.budget.result import Budget, BudgetLine
 from flashplan.cell.check import Verdict
 from flashplan.decoder import DecoderTable
-from flashplan.ladder import LadderResult
+from flashplan.ladder import LadderResult, effects
 from flashplan.measure import MeasureResult
 from flashplan.plan.model import Plan
 from flashplan.quantity import show
@@ -19,6 +19,7 @@ from flashplan.report.words import (
     CAUTION,
     goal_rows,
     headline,
+    ladder_sentence,
     line_origin,
     verdict_sentence,
 )
@@ -115,7 +116,7 @@ def verdict_table(verdict: Verdict) -> RenderableType:
 def ladder_table(result: LadderResult) -> RenderableType:
     """Worst tap of each effect."""
     table = _table("effect", "largest error", "at tap", "rms over taps")
-    for name, errors in result.effects_lsb().items():
+    for name, errors in effects(result).items():
         if errors is None:
             table.add_row(name, "not known", "-", "-")
             continue
@@ -127,7 +128,7 @@ def ladder_table(result: LadderResult) -> RenderableType:
             str(worst + 1),
             show(rms, "lsb", 3),
         )
-    return Group(*(Text(line) for line in result.summary()), table, _caution())
+    return Group(Text(ladder_sentence(result)), table, _caution())
 
 
 def array_table(plan: Plan, result: ArrayResult) -> RenderableType:
@@ -237,13 +238,26 @@ def decoder_table(decoders: DecoderTable) -> RenderableType:
 def measure_table(result: MeasureResult) -> RenderableType:
     """What the record holds, its figures, and which errors explain it."""
     facts = _table("quantity", "value")
-    facts.add_row("samples", f"{result.samples}, {result.cycles:.6g} cycles" + ("" if result.coherent else ", not coherent"))
-    facts.add_row("input", f"{show(result.frequency, 'Hz', 6)}, amplitude {result.amplitude_lsb:.4g} LSB")
+    facts.add_row(
+        "samples",
+        f"{result.samples}, {result.cycles:.6g} cycles"
+        + ("" if result.coherent else ", not coherent"),
+    )
+    facts.add_row(
+        "input",
+        f"{show(result.frequency, 'Hz', 6)}, amplitude {result.amplitude_lsb:.4g} LSB",
+    )
     facts.add_row("SNDR", f"{result.sndr_db:.2f} dB")
     facts.add_row("SFDR", f"{result.sfdr_db:.1f} dB")
     facts.add_row("ENOB", f"{result.enob:.3f}")
-    facts.add_row("largest |DNL|", f"{np.nanmax(np.abs(result.dnl_lsb)):.3f} LSB ({result.linearity_fit} line)")
-    facts.add_row("largest |INL|", f"{np.nanmax(np.abs(result.inl_lsb)):.3f} LSB ({result.linearity_fit} line)")
+    facts.add_row(
+        "largest |DNL|",
+        f"{np.nanmax(np.abs(result.dnl_lsb)):.3f} LSB ({result.linearity_fit} line)",
+    )
+    facts.add_row(
+        "largest |INL|",
+        f"{np.nanmax(np.abs(result.inl_lsb)):.3f} LSB ({result.linearity_fit} line)",
+    )
     found = _table("explained by", "value", "95 % interval", "limit", "verdict")
     for name, finding in result.diagnosis.items():
         found.add_row(
@@ -253,9 +267,17 @@ def measure_table(result: MeasureResult) -> RenderableType:
             show(finding.limit, finding.unit, 3),
             Text("open", style="yellow") if finding.met is None else mark(finding.met),
         )
-    broken = [name for name, finding in result.diagnosis.items() if finding.met is False]
-    first = f"Broken: {', '.join(broken)}." if broken else "No budget line is shown to be broken."
-    return Group(Text(first, style="bold red" if broken else "green"), facts, found, _caution())
+    broken = [
+        name for name, finding in result.diagnosis.items() if finding.met is False
+    ]
+    first = (
+        f"Broken: {', '.join(broken)}."
+        if broken
+        else "No budget line is shown to be broken."
+    )
+    return Group(
+        Text(first, style="bold red" if broken else "green"), facts, found, _caution()
+    )
 
 
 def sweep_table(result: SweepResult) -> RenderableType:

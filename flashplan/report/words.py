@@ -2,9 +2,12 @@
 
 from dataclasses import dataclass
 
+import numpy as np
+
 from flashplan.array.result import ArrayResult
 from flashplan.budget.result import BudgetLine
 from flashplan.cell.check import Verdict, VerdictLine
+from flashplan.ladder import LadderResult, effects
 from flashplan.plan.model import Plan
 from flashplan.quantity import show
 
@@ -96,6 +99,20 @@ def verdict_sentence(verdict: Verdict) -> str:
             f" Not judged, since the datasheet does not give it: {', '.join(unknown)}."
         )
     return text
+
+
+def ladder_sentence(result: LadderResult) -> str:
+    """Resistance, power and the effect that moves a tap most."""
+    known = {
+        name: float(np.abs(errors).max())
+        for name, errors in effects(result).items()
+        if errors is not None
+    }
+    worst = max(known, key=lambda name: known[name])
+    return (
+        f"{show(result.total_resistance, 'ohm')} in total, {show(result.power, 'W')} of reference power;"
+        f" most moved by {worst}, up to {known[worst]:.3g} LSB."
+    )
 
 
 # The lines that can break each goal.
