@@ -15,6 +15,7 @@ Scheme = Literal[
     "ones-counter",
     "mux-tree",
     "fat-tree",
+    "gray-logic",
 ]
 
 
