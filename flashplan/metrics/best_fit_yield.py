@@ -54,7 +54,9 @@ def best_fit_yield(
         shares = np.array([1.0, 4.0, 1.0]) / 6.0
     if bits == 2:
         return _two_bits(density.sigma, resistor_sigma, dnl, inl, left, gains, shares)
-    nodes, chances = _movements(vectors, density, min(dnl, inl), not systematic.any(), refine)
+    nodes, chances = _movements(
+        vectors, density, min(dnl, inl), not systematic.any(), refine
+    )
     shift = -left[:, np.newaxis] + 1j * density.sigma * (vectors @ nodes)
     hazards = shifted_hazards(
         density,
