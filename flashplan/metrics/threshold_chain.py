@@ -7,8 +7,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from flashplan.metrics.band_operator import Panels, band_matrix, make_panels
-from flashplan.metrics.offset_density import OffsetDensity
 from flashplan.metrics.gaussian_path import GaussianPath
+from flashplan.metrics.offset_density import OffsetDensity
 
 # Kinks of the iterates soften by one derivative per step; deeper ones than this are below the quadrature's error.
 _KINK_DEPTH = 9
