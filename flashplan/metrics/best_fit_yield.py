@@ -54,7 +54,9 @@ def best_fit_yield(
         shares = np.array([1.0, 4.0, 1.0]) / 6.0
     if bits == 2:
         return _two_bits(density.sigma, resistor_sigma, dnl, inl, left, gains, shares)
-    nodes, chances = _movements(vectors, density, min(dnl, inl), not systematic.any(), refine)
+    nodes, chances = _movements(
+        vectors, density, min(dnl, inl), not systematic.any(), refine
+    )
     shift = -left[:, np.newaxis] + 1j * density.sigma * (vectors @ nodes)
     hazards = shifted_hazards(
         density,
@@ -80,7 +82,7 @@ def _movements(
     the complex conjugate.
     """
     strength = min(goal / density.sigma, 7.0) * np.abs(vectors).max(axis=0)
-    rules = [hermite_rule(int(np.ceil(3 + 1.5 * s**2)) + 2 * refine) for s in strength]
+    rules = [hermite_rule(int(np.ceil(2 + 4 * s + s**2)) + 2 * refine) for s in strength]
     z0, z1 = (v.ravel() for v in np.meshgrid(rules[0][0], rules[1][0], indexing="ij"))
     weight = np.outer(rules[0][1], rules[1][1]).ravel()
     z0, z1 = np.round(z0, 12), np.round(z1, 12)

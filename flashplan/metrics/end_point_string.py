@@ -52,7 +52,9 @@ def string_yield(
     # the outer taps' own movement, as a part of the LSB: b_M - b_1 of a pinned string
     slack = resistor_sigma * np.sqrt(2.0 / (steps * (steps + 2.0)))
     wobble = np.hypot(slack, np.sqrt(2.0) * start / steps)
-    gain_knots = np.sqrt(3.0) * (np.array([-1, 0, 1]) if steps > 14 else np.linspace(-1.5, 1.5, 5))
+    gain_knots = np.sqrt(3.0) * (
+        np.array([-1, 0, 1]) if steps > 14 else np.linspace(-1.5, 1.5, 5)
+    )
     y, gain = (
         v.ravel()
         for v in np.meshgrid(points, mean_gain + wobble * gain_knots, indexing="ij")
@@ -98,7 +100,9 @@ def _peak(start: float, spread: float) -> float:
     return start * (1 - t) ** 2 + spread * t * (1 - t)
 
 
-def _start_rule(density: OffsetDensity, start: float, modes: int) -> tuple[Array, Array]:
+def _start_rule(
+    density: OffsetDensity, start: float, modes: int
+) -> tuple[Array, Array]:
     """The path's nodes before the chain, in LSB, and the chance of each as the first offset."""
     nodes, weights, hermite = hermite_rule(modes)
     if isinstance(density, NormalOffsets):

@@ -25,7 +25,7 @@ Array = NDArray[np.float64]
 # Spacing of the outer offsets, in units of the density's width.
 _SPACING = 0.5
 # Part of the loss that the outer offsets left out may carry.
-_CUT = 1e-5
+_CUT = 5e-5
 
 
 def end_point_yield(
@@ -43,11 +43,20 @@ def end_point_yield(
     bow = systematic - systematic[0] - ends * np.arange(steps + 1) / steps
     mean_gain = 1.0 + ends / steps
     points, chances = _outer_rule(density, refine)
-    rare = _CUT * _least_loss(density, dnl, inl, steps)
+    # by decades, so that the yield stays a smooth function of sigma
+    rare = _CUT * 10 ** np.floor(np.log10(_least_loss(density, dnl, inl, steps)))
     if resistor_sigma > 0:
         keep = _carry(chances, rare)
         return string_yield(
-            density, dnl, inl, resistor_sigma, bow[1:-1], mean_gain, points[keep], chances[keep], refine
+            density,
+            dnl,
+            inl,
+            resistor_sigma,
+            bow[1:-1],
+            mean_gain,
+            points[keep],
+            chances[keep],
+            refine,
         )
     x, y = (v.ravel() for v in np.meshgrid(points, points, indexing="ij"))
     chance = np.outer(chances, chances).ravel()

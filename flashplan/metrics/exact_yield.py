@@ -4,12 +4,12 @@ import math
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from flashplan.metrics.best_fit_yield import best_fit_yield
 from flashplan.metrics.end_point_yield import end_point_yield
 from flashplan.metrics.fixed_line_yield import fixed_line_yield
-from flashplan.metrics.linearity import FITS, Fit
+from flashplan.metrics.linearity import FITS, Fit, dnl_inl
 from flashplan.metrics.offset_density import NormalOffsets, OffsetDensity
 
 
@@ -42,7 +42,7 @@ def linearity_yield(
     systematic_lsb[k - 1]. The thresholds form a Markov chain: the yield is one integral operator applied 2**bits - 2
     times, and an end-point line is averaged over the two outer offsets.
 
-    offset_sigma_lsb: standard deviation of a normal offset, in LSB, > 0; offset_density: any other density in its
+    offset_sigma_lsb: standard deviation of a normal offset, in LSB; offset_density: any other density in its
     place (see offset_density.py). dnl_lsb, inl_lsb: goals in LSB, > 0; math.inf switches one off. fit: the reference line, see dnl_inl.
     resistor_sigma: relative standard deviation of one resistor. systematic_lsb: (2**bits - 1,) in LSB. refine: further
     nodes per panel, to show that the answer stands. Relative error, of yield and loss alike down to 1e-9: below 1e-6
@@ -53,33 +53,83 @@ def linearity_yield(
     0.9990
     """
     check_goals(bits, dnl_lsb, inl_lsb, fit, resistor_sigma)
-    if offset_density is None:
-        if not 0 < offset_sigma_lsb < math.inf:
-            raise ValueError(
-                f"the offset's sigma must be positive and finite, found {offset_sigma_lsb!r} LSB"
-            )
-        offset_density = NormalOffsets(offset_sigma_lsb)
-    count = 2**bits - 1
-    systematic = np.zeros(count)
-    if systematic_lsb is not None:
-        systematic = np.asarray(systematic_lsb, dtype=np.float64)
-        if systematic.shape != (count,) or not np.isfinite(systematic).all():
-            raise ValueError(
-                f"systematic errors must be {count} finite numbers, one for each threshold"
-            )
-    moving = resistor_sigma > 0 or systematic.any() or fit != "none"
-    if offset_density.kinks and moving:
+    systematic = _per_threshold(bits, systematic_lsb)
+    goals = (bits, dnl_lsb, inl_lsb, fit, resistor_sigma, systematic, refine)
+    if offset_density is not None:
+        return _solve(offset_density, *goals)
+    if not 0 <= offset_sigma_lsb < math.inf:
+        raise ValueError(
+            f"the offset's sigma must be zero or more and finite, found {offset_sigma_lsb!r} LSB"
+        )
+    lowest = smallest_offset_sigma(bits, resistor_sigma)
+    if offset_sigma_lsb == 0 and resistor_sigma == 0:
+        dnl, inl = (np.abs(v).max() for v in dnl_inl(systematic, fit))
+        passes = float(dnl < dnl_lsb and inl < inl_lsb)
+        return YieldResult(passes, 1.0 - passes)
+    if offset_sigma_lsb >= lowest:
+        return _solve(NormalOffsets(offset_sigma_lsb), *goals)
+    # offsets small against the string: -log(yield) on a logarithmic scale is nearly a line in sigma squared
+    squares = lowest**2 * np.array([1.0, 1.5, 2.0])
+    rates = [
+        math.log(max(hazard_of(_solve(NormalOffsets(s), *goals)), 1e-300))
+        for s in np.sqrt(squares)
+    ]
+    curve = np.polynomial.Polynomial.fit(squares, rates, 2)
+    rate = math.exp(curve(offset_sigma_lsb**2))
+    return YieldResult(math.exp(-rate), -math.expm1(-rate))
+
+
+def smallest_offset_sigma(bits: int, resistor_sigma: float) -> float:
+    """The normal offset's sigma, in LSB, below which linearity_yield extrapolates: a quarter of the string's movement."""
+    return 0.25 * 0.5 * resistor_sigma * math.sqrt(2**bits)
+
+
+def _solve(
+    density: OffsetDensity,
+    bits: int,
+    dnl: float,
+    inl: float,
+    fit: Fit,
+    resistor_sigma: float,
+    systematic: NDArray[np.float64],
+    refine: int,
+) -> YieldResult:
+    if density.kinks and (
+        resistor_sigma > 0 or systematic.any() or fit != "none"
+    ):  # kinks would move from threshold to threshold
         raise ValueError(
             "a density with a jump or a bounded support works with fit none alone, without resistor mismatch and "
             "systematic errors; give it a soft edge"
         )
-    solve = {"none": fixed_line_yield, "endpoint": end_point_yield, "best": best_fit_yield}[fit]
-    loss, survive = solve(
-        bits, offset_density, dnl_lsb, inl_lsb, resistor_sigma, systematic, refine
-    )
+    solve = {
+        "none": fixed_line_yield,
+        "endpoint": end_point_yield,
+        "best": best_fit_yield,
+    }[fit]
+    loss, survive = solve(bits, density, dnl, inl, resistor_sigma, systematic, refine)
+    loss, survive = min(max(loss, 0.0), 1.0), min(max(survive, 0.0), 1.0)
     if loss > survive:  # the smaller of the two keeps its relative accuracy
         return YieldResult(survive, 1.0 - survive)
     return YieldResult(1.0 - loss, loss)
+
+
+def hazard_of(result: YieldResult) -> float:
+    """-log(yield)."""
+    if result.loss < 0.5:
+        return -math.log1p(-result.loss)
+    return -math.log(max(result.yield_, 1e-300))
+
+
+def _per_threshold(bits: int, systematic: ArrayLike | None) -> NDArray[np.float64]:
+    count = 2**bits - 1
+    if systematic is None:
+        return np.zeros(count)
+    errors = np.asarray(systematic, dtype=np.float64)
+    if errors.shape != (count,) or not np.isfinite(errors).all():
+        raise ValueError(
+            f"systematic errors must be {count} finite numbers, one for each threshold"
+        )
+    return errors
 
 
 def check_goals(

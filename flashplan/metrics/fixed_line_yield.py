@@ -40,7 +40,11 @@ def fixed_line_yield(
     """
     if resistor_sigma == 0 and not systematic.any():
         band = make_band(
-            min(inl, density.reach), dnl, density, density.kinks, 2.8 * (1 + 0.25 * refine)
+            min(inl, density.reach),
+            dnl,
+            density,
+            density.kinks,
+            2.8 * (1 + 0.25 * refine),
         )
         return homogeneous_chain(band, density, 2**bits - 2)
     hazards = shifted_hazards(

@@ -80,7 +80,9 @@ class TrimmedOffsets:
         return self.step / 2 + 9.3 * self.edge
 
     def pdf(self, x: Any) -> Any:
-        far = -np.abs(x)  # in the lower tail, where a difference of two tails keeps its accuracy
+        far = -np.abs(
+            x
+        )  # in the lower tail, where a difference of two tails keeps its accuracy
         up, down = (far + self.step / 2) / self.edge, (far - self.step / 2) / self.edge
         return (ndtr(up) - ndtr(down)) / self.step
 

@@ -7,28 +7,35 @@ import numpy as np
 from numpy.typing import NDArray
 
 from flashplan.metrics.band_operator import Panels, band_matrix, make_panels
-from flashplan.metrics.offset_density import OffsetDensity
 from flashplan.metrics.gaussian_path import GaussianPath
+from flashplan.metrics.offset_density import OffsetDensity
 
 # Kinks of the iterates soften by one derivative per step; deeper ones than this are below the quadrature's error.
 _KINK_DEPTH = 9
 
 
 @dataclass(frozen=True, slots=True)
+class Step:
+    """One threshold's limits: integrate (rows, n) is the band integral between them; each tail once, and who uses it."""
+
+    integrate: NDArray
+    lower: NDArray
+    which_lower: NDArray
+    upper: NDArray
+    which_upper: NDArray
+
+
+@dataclass(frozen=True, slots=True)
 class Band:
     """The two goals on one set of panels: |u| < half (the INL goal, or where the density ends), |step| < dnl.
 
-    half, dnl in LSB; dnl may be infinite.
+    half, dnl in LSB; dnl may be infinite. between: the step from one threshold to the next.
     """
 
     panels: Panels
     half: float
     dnl: float
-
-    def limits(self, at: NDArray, room: float = np.inf) -> tuple[NDArray, NDArray]:
-        """Lowest and highest next value that passes from each value in `at`, itself within +-room."""
-        top = min(self.half, room)
-        return np.maximum(at - self.dnl, -top), np.minimum(at + self.dnl, top)
+    between: Step
 
 
 def make_band(
@@ -43,13 +50,30 @@ def make_band(
     half: where the domain ends, in LSB; hard: where the integrand itself jumps or has a kink, beside +-half.
     """
     hard_edges = (half, *hard) if half < density.reach else hard
+    depth = _KINK_DEPTH if np.isfinite(dnl) else 1
     breaks = [
-        edge + sign * steps * dnl
+        edge + sign * steps * dnl if steps else edge
         for edge in hard_edges
-        for steps in range(_KINK_DEPTH if np.isfinite(dnl) else 1)
-        for sign in ((1, -1) if np.isfinite(dnl) else (1,))
+        for steps in range(depth)
+        for sign in (1, -1)
     ]
-    return Band(make_panels(half, breaks, density.width, nodes_per_width), half, dnl)
+    panels = make_panels(half, breaks, density.width, nodes_per_width)
+    between = _make_step(panels, *_limits(panels.nodes, half, dnl))
+    return Band(panels, half, dnl, between)
+
+
+def _limits(at: NDArray, half: float, dnl: float) -> tuple[NDArray, NDArray]:
+    """Lowest and highest next value that passes from each value in `at`."""
+    return np.maximum(at - dnl, -half), np.minimum(at + dnl, half)
+
+
+def _make_step(panels: Panels, lower: NDArray, upper: NDArray) -> Step:
+    # half of the limits are the box itself: work out each tail once
+    return Step(
+        band_matrix(panels, lower, upper),
+        *np.unique(lower, return_inverse=True),
+        *np.unique(upper, return_inverse=True),
+    )
 
 
 def homogeneous_chain(
@@ -62,9 +86,10 @@ def homogeneous_chain(
     numbers is taken, so both keep their relative accuracy however small.
     """
     x = band.panels.nodes
-    lower, upper = band.limits(x)
-    operator = band_matrix(band.panels, lower, upper) * density.pdf(x)
-    fails = density.cdf(lower) + density.sf(upper)
+    step = band.between
+    operator = step.integrate * density.pdf(x)
+    fails = density.cdf(step.lower)[step.which_lower]
+    fails += density.sf(step.upper)[step.which_upper]
     start = band.panels.weights * density.pdf(x)
     outside = density.cdf(-band.half) + density.sf(band.half)
     if density.symmetric:  # both iterates are even: keep one half of the nodes
@@ -128,16 +153,12 @@ def stepped_chain(
     kind = np.result_type(stretch.shift, float)
     loss = np.zeros((len(x), columns, modes), kind)
     survive = np.ones((len(x), columns, modes), kind)
-    between = _Step(band, *band.limits(x))
     for i in range(count - 1, -1, -1):
         moved = stretch.shift[i][:, np.newaxis] + path.deviation[i] * path.nodes
-        step = between
-        if i == 0 and not stretch.tied:
-            step = _Step(band, np.array([-band.half]), np.array([band.half]))
-        elif i in (0, count - 1) and stretch.tied:
-            room = band.dnl if i == count - 1 else np.inf
-            step = _Step(band, *band.limits(x if i else np.zeros(1), room))
-        loss, survive = step.apply(loss, survive, density, gain, moved)
+        step = band.between
+        if i == 0 or (stretch.tied and i == count - 1):
+            step = _end_step(band, stretch.tied, i == 0, i == count - 1)
+        loss, survive = _advance(loss, survive, band, step, density, gain, moved)
         if hazard is not None:
             more = repeats * hazard(moved, gain)
             kept = np.exp(-more)
@@ -148,33 +169,38 @@ def stepped_chain(
     return loss[0], survive[0]
 
 
-class _Step:
-    """One threshold of the chain: the band integral and the tails outside, for one set of limits."""
+def _end_step(band: Band, tied: bool, first: bool, last: bool) -> Step:
+    """The step onto the first threshold, from u = 0 if tied; onto the last, from which u = 0 must be in reach."""
+    lower, upper = np.array([-band.half]), np.array([band.half])
+    if tied:
+        at = np.zeros(1) if first else band.panels.nodes
+        lower, upper = _limits(at, band.half, band.dnl)
+        if last:
+            lower, upper = np.maximum(lower, -band.dnl), np.minimum(upper, band.dnl)
+    return _make_step(band.panels, lower, upper)
 
-    def __init__(self, band: Band, lower: NDArray, upper: NDArray) -> None:
-        self.nodes = band.panels.nodes[:, np.newaxis, np.newaxis]
-        self.integrate = band_matrix(band.panels, lower, upper)
-        # half of the limits are the box itself: work out each tail once
-        self.lower, self.which_lower = np.unique(lower, return_inverse=True)
-        self.upper, self.which_upper = np.unique(upper, return_inverse=True)
 
-    def apply(
-        self,
-        loss: NDArray,
-        survive: NDArray,
-        density: OffsetDensity,
-        gain: NDArray,
-        moved: NDArray,
-    ) -> tuple[NDArray, NDArray]:
-        weight = gain * density.pdf(gain * self.nodes + moved)
-        below = density.cdf(gain * self.lower[:, np.newaxis, np.newaxis] + moved)
-        above = density.sf(gain * self.upper[:, np.newaxis, np.newaxis] + moved)
-        lost = self._band(weight * loss)
-        lost += below[self.which_lower]
-        lost += above[self.which_upper]
-        weight *= survive
-        return lost, self._band(weight)
+def _advance(
+    loss: NDArray,
+    survive: NDArray,
+    band: Band,
+    step: Step,
+    density: OffsetDensity,
+    gain: NDArray,
+    moved: NDArray,
+) -> tuple[NDArray, NDArray]:
+    """Loss and survival from one threshold on, from those of the next: (n, columns, modes) to (rows, columns, modes)."""
 
-    def _band(self, values: NDArray) -> NDArray:
-        flat = self.integrate @ values.reshape(len(values), -1)
+    def offset(u: NDArray) -> NDArray:
+        return gain * u[:, np.newaxis, np.newaxis] + moved
+
+    def integral(values: NDArray) -> NDArray:
+        flat = step.integrate @ values.reshape(len(values), -1)
         return flat.reshape(-1, *values.shape[1:])
+
+    weight = gain * density.pdf(offset(band.panels.nodes))
+    lost = integral(weight * loss)
+    lost += density.cdf(offset(step.lower))[step.which_lower]
+    lost += density.sf(offset(step.upper))[step.which_upper]
+    weight *= survive
+    return lost, integral(weight)
