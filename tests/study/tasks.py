@@ -4,6 +4,7 @@ import os
 import signal
 import time
 from dataclasses import dataclass
+from multiprocessing.synchronize import Event
 from pathlib import Path
 from typing import Any
 
@@ -55,8 +56,9 @@ class Scaled:
         return {"draw": self.scale * generator.normal()}
 
 
-def study_into(store: str | Path, chunks: int) -> None:
-    """Run the unhurried task into a store, as a process of its own does."""
+def study_into(store: str | Path, chunks: int, at_work: Event) -> None:
+    """Run the unhurried task into a store, as a process of its own does, and tell when it begins."""
+    at_work.set()
     run_study(unhurried, chunks, seed=3, store=store)
 
 
