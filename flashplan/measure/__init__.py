@@ -1,0 +1,1 @@
+"""Captured codes: read, measured, and explained against the plan."""
