@@ -33,15 +33,20 @@ def read_capture(path: str | Path, bits: int) -> Capture:
     rows, columns = table.shape
     if columns not in (1, count):
         raise InputError(
-            f"has {columns} columns; {bits} bits need 1 (codes) or {count} (one per comparator)", str(path)
+            f"has {columns} columns; {bits} bits need 1 (codes) or {count} (one per comparator)",
+            str(path),
         )
     if rows < FEWEST_SAMPLES:
-        raise InputError(f"has {rows} samples; at least {FEWEST_SAMPLES} are needed", str(path))
+        raise InputError(
+            f"has {rows} samples; at least {FEWEST_SAMPLES} are needed", str(path)
+        )
     top = 1 if columns == count and count > 1 else count
     wrong = ~((table >= 0) & (table <= top) & (table == np.floor(table)))
     if wrong.any():
         row, column = np.argwhere(wrong)[0]
-        place = f"{path}: {'row' if path.suffix == '.npy' else 'line'} {row + first_line}"
+        place = (
+            f"{path}: {'row' if path.suffix == '.npy' else 'line'} {row + first_line}"
+        )
         what = f"a whole code from 0 to {count}" if columns == 1 else "0 or 1"
         raise InputError(f"expected {what}, found {table[row, column]:g}", place)
     if columns == 1:
@@ -55,8 +60,13 @@ def _read_npy(path: Path) -> tuple[NDArray[np.float64], int]:
         table = np.load(path, allow_pickle=False)
     except (OSError, ValueError) as error:
         raise InputError(f"cannot read the array: {error}", str(path)) from None
-    if table.ndim not in (1, 2) or not (np.issubdtype(table.dtype, np.number) or table.dtype == bool):
-        raise InputError(f"expected one or two dimensions of numbers, found {table.ndim} of {table.dtype}", str(path))
+    if table.ndim not in (1, 2) or not (
+        np.issubdtype(table.dtype, np.number) or table.dtype == bool
+    ):
+        raise InputError(
+            f"expected one or two dimensions of numbers, found {table.ndim} of {table.dtype}",
+            str(path),
+        )
     return np.asarray(table.reshape(table.shape[0], -1), dtype=float), 0
 
 
@@ -64,7 +74,10 @@ def _read_csv(path: Path) -> tuple[NDArray[np.float64], int]:
     try:
         lines = path.read_text(encoding="utf-8").splitlines()
     except (OSError, UnicodeDecodeError) as error:
-        raise InputError(f"cannot read the file: {getattr(error, 'strerror', None) or error}", str(path)) from None
+        raise InputError(
+            f"cannot read the file: {getattr(error, 'strerror', None) or error}",
+            str(path),
+        ) from None
     while lines and not lines[-1].strip():
         lines.pop()
     if not lines:
@@ -93,7 +106,9 @@ def _first_bad_line(path: Path, body: list[str], first_line: int) -> InputError:
             return InputError(f"expected numbers, found {line.strip()[:40]!r}", where)
         width = len(cells) if width is None else width
         if len(cells) != width:
-            return InputError(f"has {len(cells)} columns where the first line has {width}", where)
+            return InputError(
+                f"has {len(cells)} columns where the first line has {width}", where
+            )
     return InputError("is not a table of numbers", str(path))
 
 

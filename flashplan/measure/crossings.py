@@ -1,129 +1,149 @@
-"""Where each comparator really decides, and how its last decision, the input's slope and noise move that."""
+"""What the decisions near the thresholds say of each comparator: a probit likelihood, expanded about a guess."""
 
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import log_ndtr, ndtr
+from scipy.special import erfcx
 
 Floats = NDArray[np.float64]
 
-# Samples within so many LSB of a threshold are looked at; wide enough for any array worth diagnosing.
-_WINDOW = 3.0
-_FEWEST = 40  # samples near a threshold without which it says nothing
-_STEPS = 25
+# Decisions looked at: enough for intervals far narrower than any budget line, few enough to be done in a second.
+_MOST_ROWS = 400_000
+_FEWEST_ROWS = 8  # near a threshold, without which it says nothing
 
 
 @dataclass(frozen=True)
-class Crossings:
-    """Estimates at each threshold, (M,) in LSB, each with its standard error; nan where the record does not tell.
+class NearDecisions:
+    """The decisions that were taken near a threshold, sorted by comparator; one row each.
 
-    position: of the threshold between its two trip points. memory: half the hysteresis, by which a last decision of 1
-    lowers it. lead: how far skew moves it under a rising input. noise: sigma of what scatters from sample to sample.
-    together: (M,) bool, where last decision and direction always went together, so that memory holds memory - lead.
+    position: (K,) first guess of the thresholds that were reached, in LSB; index: (K,) their number, from 0; start:
+    (K,) their first row. value: the input in LSB; slope: of the input against its largest; last: +-1, this
+    comparator's decision a sample earlier; sign: +-1, its decision. spacing: of neighbouring samples of the input in
+    LSB, below which no scatter can be seen. doubt: distance from a threshold within which decisions disagree with it.
     """
 
     position: Floats
-    position_error: Floats
-    memory: Floats
-    memory_error: Floats
-    lead: Floats
-    lead_error: Floats
-    noise: Floats
-    noise_error: Floats
-    together: NDArray[np.bool_]
+    index: NDArray[np.int64]
+    start: NDArray[np.int64]
+    owner: NDArray[np.int64]
+    value: Floats
+    slope: Floats
+    last: Floats
+    sign: Floats
+    spacing: float
+    doubt: float
 
 
-def find_crossings(value: Floats, slope: Floats, decisions: NDArray[np.bool_]) -> Crossings:
-    """Estimate every threshold from a record with a known input, by probit regression of each comparator's decisions.
+@dataclass(frozen=True)
+class Expansion:
+    """Log-likelihood near a guess, per comparator, to second order.
 
-    P(1) = Phi((v - T + memory m + lead s) / sigma), with m = +-1 the comparator's last decision and s the input's slope
-    against the largest slope near this threshold.
-    value: (n,) input in LSB; slope: (n,) its slope, any unit; decisions: (n, M) bool, in the order taken.
-    Source: C. I. Bliss, "The method of probits", Science 79, 1934 (memory); standard errors from Fisher's information.
+    score: (K, 4) and information: (K, 4, 4) for threshold, memory, lead (LSB) and the logarithm of the scatter.
+    steepness: (K,) mean square slope, against the largest, of the rows that tell of the scatter.
     """
-    count = decisions.shape[1]
+
+    score: Floats
+    information: Floats
+    steepness: Floats
+
+
+def balance(value: Floats, decisions: NDArray[np.bool_]) -> Floats:
+    """Value below which as many samples lie as were decided 0, for each comparator: (M,), in the unit of `value`.
+
+    That is the histogram test's code transition level, for any input whose value at each sample (n,) is known; nan for
+    a comparator that always decided the same. decisions: (n, M) bool.
+    Source: IEEE Std 1241-2010, histogram test (memory).
+
+    >>> balance(np.array([3.0, 1.0, 2.0]), np.array([[True], [False], [True]]))
+    array([1.5])
+    """
+    ordered = np.sort(value)
+    zeros = value.size - np.count_nonzero(decisions, axis=0)
+    inner = np.clip(zeros, 1, value.size - 1)
+    level = 0.5 * (ordered[inner - 1] + ordered[inner])
+    return np.where(inner == zeros, level, np.nan)
+
+
+def near_decisions(
+    value: Floats, slope: Floats, decisions: NDArray[np.bool_]
+) -> NearDecisions:
+    """Gather the decisions that were taken where they were in doubt.
+
+    value: (n,) input in LSB; slope: (n,) its slope, any unit; decisions: (n, M) bool, in the order taken. Long records
+    are cut short once they say enough.
+    """
+    level = balance(value, decisions)
+    reached = np.flatnonzero(np.isfinite(level))
     order = np.argsort(value, kind="stable")
     ordered = value[order]
-    fields = np.full((8, count), np.nan)
-    together = np.zeros(count, dtype=bool)
-    for k in range(count):
-        middle = _balance(ordered, decisions[order, k])
-        low, high = np.searchsorted(ordered, [middle - _WINDOW, middle + _WINDOW])
-        inside = order[low:high]
-        inside = inside[inside > 0]  # the first sample has no last decision
-        if inside.size < _FEWEST:
-            continue
-        last = 2.0 * decisions[inside - 1, k] - 1.0
-        steep = slope[inside] / np.abs(slope[inside]).max()
-        together[k] = bool(np.mean(last * np.sign(steep) < 0) > 0.98)
-        columns = [np.ones(inside.size), value[inside] - middle, last]
-        if not together[k]:
-            columns.append(steep)
-        fit = _probit(np.stack(columns, axis=1), decisions[inside, k])
-        if fit is None:
-            continue
-        fields[: 2 * len(columns), k] = _in_lsb(middle, *fit)
-    position, noise, memory, lead = fields[0:2], fields[2:4], fields[4:6], fields[6:8]
-    return Crossings(*position, *memory, *lead, *noise, together)
+    spacing = float(np.pi * np.ptp(value) / 2 / value.size)
+    doubt = _doubt(value, decisions, level, reached) + 10 * spacing
+    samples = int(min(value.size, max(1024, _MOST_ROWS / (2 * doubt + 1))))
+    order = order[order < samples]
+    ordered = value[order]
+    low, high = np.searchsorted(ordered, level[reached] + [[-doubt], [doubt]])
+    told = high - low >= _FEWEST_ROWS
+    reached, low, high = reached[told], low[told], high[told]
+    rows = [
+        order[a:b][order[a:b] > 0] for a, b in zip(low, high, strict=True)
+    ]  # the first sample has no last decision
+    counts = np.array([row.size for row in rows], dtype=np.int64)
+    row = np.concatenate(rows) if rows else np.zeros(0, dtype=np.int64)
+    owner = np.repeat(np.arange(reached.size), counts)
+    column = reached[owner]
+    return NearDecisions(
+        position=level[reached],
+        index=reached,
+        start=np.concatenate([[0], np.cumsum(counts)[:-1]]).astype(np.int64),
+        owner=owner,
+        value=value[row],
+        slope=slope[row] / np.abs(slope).max(),
+        last=2.0 * decisions[row - 1, column] - 1.0,
+        sign=2.0 * decisions[row, column] - 1.0,
+        spacing=spacing,
+        doubt=doubt,
+    )
 
 
-def _in_lsb(middle: float, beta: Floats, covariance: Floats) -> list[float]:
-    """Position, noise, memory and lead, each followed by its standard error, from the regression's own scale."""
-    sigma = 1.0 / beta[1]
-    found = []
-    for place, (offset, sign) in enumerate(((middle, -1.0), (0.0, 0.0), (0.0, 1.0), (0.0, 1.0))[: beta.size]):
-        if place == 1:
-            found += [sigma, float(np.sqrt(covariance[1, 1])) * sigma**2]
-            continue
-        gradient = np.zeros(beta.size)
-        gradient[place], gradient[1] = sigma, -beta[place] * sigma**2
-        found += [offset + sign * beta[place] * sigma, float(np.sqrt(gradient @ covariance @ gradient))]
-    return found
+def _doubt(
+    value: Floats,
+    decisions: NDArray[np.bool_],
+    level: Floats,
+    reached: NDArray[np.int64],
+) -> float:
+    """Distance from a threshold within which nearly every decision lies that disagrees with it."""
+    far = 0.0
+    for k in reached:
+        wrong = decisions[:, k] != (value > level[k])
+        if wrong.any():
+            far = max(far, float(np.abs(value[wrong] - level[k]).max()))
+    return 1.2 * far
 
 
-def _probit(columns: Floats, decided: NDArray[np.bool_]) -> tuple[Floats, Floats] | None:
-    """Coefficients and their covariance by Fisher scoring; None where the decisions are separated, as without noise."""
-    sign = np.where(decided, 1.0, -1.0)
-    beta = np.zeros(columns.shape[1])
-    beta[1] = 1.0
-    best = -np.inf
-    step = np.zeros_like(beta)
-    information = np.eye(beta.size)
-    for _ in range(_STEPS):
-        eta = columns @ beta
-        likelihood = float(log_ndtr(sign * eta).sum())
-        if likelihood < best - 1e-9 * abs(best):
-            step = step / 2
-            beta = beta - step
-            continue
-        best = likelihood
-        below = np.clip(ndtr(eta), 1e-12, 1 - 1e-12)
-        density = np.exp(-0.5 * eta**2) / np.sqrt(2 * np.pi)
-        information = (columns * (density**2 / (below * (1 - below)))[:, None]).T @ columns
-        score = columns.T @ (density * (decided - below) / (below * (1 - below)))
-        try:
-            step = np.linalg.solve(information, score)
-        except np.linalg.LinAlgError:
-            return None
-        beta = beta + step
-        if np.abs(step).max() < 1e-8 * max(1.0, np.abs(beta).max()):
-            break
-    else:
-        return None
-    if beta[1] <= 0:
-        return None
-    try:
-        return beta, np.linalg.inv(information)
-    except np.linalg.LinAlgError:
-        return None
+def expand(near: NearDecisions, guess: Floats, scatter: Floats) -> Expansion:
+    """Expand the log-likelihood of P(1) = Phi((v - T + m last + l slope) / s) about a guess.
 
-
-def _balance(value: Floats, decided: NDArray[np.bool_]) -> float:
-    """The point of sorted values below which as many lie as are not decided 1."""
-    zeros = int(np.count_nonzero(~decided))
-    if zeros == 0:
-        return float(value[0])
-    if zeros == value.size:
-        return float(value[-1])
-    return float(0.5 * (value[zeros - 1] + value[zeros]))
+    guess: (K, 3) threshold T, memory m (half the hysteresis) and lead l (skew times the largest slope), in LSB;
+    scatter: s of each row, in LSB.
+    Source: C. I. Bliss, "The method of probits", Science 79, 1934 (memory).
+    """
+    own = guess[near.owner]
+    eta = (
+        near.value - own[:, 0] + own[:, 1] * near.last + own[:, 2] * near.slope
+    ) / scatter
+    # Mills' ratio of the decision taken; erfcx keeps it exact far out in the tail.
+    mills = np.sqrt(2 / np.pi) / erfcx(-near.sign * eta / np.sqrt(2))
+    pull = near.sign * mills
+    weight = mills * (mills + near.sign * eta)
+    design = np.stack([-1 / scatter, near.last / scatter, near.slope / scatter, -eta])
+    score = np.add.reduceat(design * pull, near.start, axis=1).T
+    information = np.empty((near.start.size, 4, 4))
+    for i in range(4):
+        weighted = design[i] * weight
+        for j in range(i + 1):
+            information[:, i, j] = np.add.reduceat(weighted * design[j], near.start)
+            information[:, j, i] = information[:, i, j]
+    told = np.add.reduceat(weight * eta**2, near.start) + 1e-300
+    steepness = np.add.reduceat(weight * eta**2 * near.slope**2, near.start) / told
+    return Expansion(score, information, steepness)

@@ -5,14 +5,18 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.stats import chi2, norm, t
+from scipy.stats import t
 
-from flashplan.measure.crossings import Crossings
+from flashplan.measure.crossings import NearDecisions, expand, near_decisions
+from flashplan.measure.effects import SHARED, fit_effects, judge_effects, shared_design
+from flashplan.measure.interval import Profile, profile_interval
+from flashplan.measure.scatter import fit_scatter, scatter, scatter_likelihood
 
 Floats = NDArray[np.float64]
 
 _CONFIDENCE = 0.95
-_TAIL = (1 - _CONFIDENCE) / 2
+_ROUNDS = 40
+_FEWEST = 5  # comparators, without which nothing can be said of how they differ
 
 
 @dataclass(frozen=True)
@@ -41,114 +45,88 @@ class Finding:
         }
 
 
-def diagnose(crossings: Crossings, slew: Floats, lsb: float) -> dict[str, Finding]:
-    """Explain the thresholds of a capture.
+def diagnose(
+    value: Floats, slope: Floats, decisions: NDArray[np.bool_], lsb: float
+) -> dict[str, Finding]:
+    """Explain the decisions of a record whose input is known up to gain, offset and delay.
 
-    crossings: from `find_crossings`; slew: (M,) magnitude of the input's slope at each threshold in LSB/s; lsb in V.
-    An error that the record cannot tell is left out. The offset's spread includes resistor mismatch, and noise and
-    jitter are told apart only by how they grow with the slope.
-    Source: error propagation and chi-square intervals of normal samples; common practice.
+    value: (n,) input in LSB; slope: (n,) in LSB/s; decisions: (n, M) bool, lowest threshold first, in the order taken;
+    lsb in V. Empty where fewer than five thresholds were reached.
+
+    The offset's spread is about a line with a bow and includes resistor mismatch. Noise and jitter are told apart by how
+    they grow with the slope, hysteresis and skew by what each comparator last decided; an interval starts at zero, and
+    is wide, where the record does not tell.
     """
-    found: dict[str, Finding] = {}
-    hysteresis = _hysteresis(crossings)
-    if hysteresis is not None:
-        found["hysteresis"] = _scaled(hysteresis, lsb, "V")
-    found |= {name: _scaled(f, lsb, "V") for name, f in _offset_and_bow(crossings).items()}
-    skew = _skew(crossings, slew)
-    if skew is not None:
-        found["skew_sigma"] = Finding(*skew, "s")
-    for name, estimate in _noise_and_jitter(crossings, slew).items():
-        if name == "noise_sigma":
-            found[name] = _scaled(estimate, lsb, "V")
-        else:
-            found[name] = Finding(*estimate, "s")
-    return found
-
-
-Estimate = tuple[float, float, float]
-
-
-def _scaled(estimate: Estimate, scale: float, unit: str) -> Finding:
-    value, low, high = (part * scale for part in estimate)
-    return Finding(value, low, high, unit)
-
-
-def _hysteresis(crossings: Crossings) -> Estimate | None:
-    """Twice the mean memory: where memory and direction go together, skew scatters it but does not shift it."""
-    known = np.isfinite(crossings.memory)
-    if np.count_nonzero(known) < 3:
-        return None
-    error = crossings.memory_error[known]
-    spread = max(crossings.memory[known].std(ddof=1) ** 2 - float(np.mean(error**2)), 0.0)
-    weight = 1.0 / (error**2 + spread)
-    mean = 2 * float(np.average(crossings.memory[known], weights=weight))
-    half = 2 * t.ppf(1 - _TAIL, error.size - 1) / float(np.sqrt(weight.sum()))
-    return max(mean, 0.0), max(mean - half, 0.0), max(mean + half, 0.0)
-
-
-def _offset_and_bow(crossings: Crossings) -> dict[str, Estimate]:
-    """Spread of the thresholds about a line with a bow, and the bow at the middle."""
-    known = np.isfinite(crossings.position)
-    if np.count_nonzero(known) < 5:
+    near = near_decisions(value, slope, decisions)
+    if near.position.size < _FEWEST:
         return {}
-    count = known.size
-    x = (np.arange(count) + 1.0)[known] / (count + 1)
-    basis = np.stack([np.ones_like(x), x, 4 * x * (1 - x)], axis=1)
-    solution, *_ = np.linalg.lstsq(basis, crossings.position[known], rcond=None)
-    rest = crossings.position[known] - basis @ solution
-    freedom = rest.size - 3
-    measured = float(np.mean(crossings.position_error[known] ** 2))
-    variance = float(rest @ rest) / freedom
-    bow = float(solution[2])
-    half = t.ppf(1 - _TAIL, freedom) * float(np.sqrt(variance * np.linalg.inv(basis.T @ basis)[2, 2]))
-    return {"offset_sigma": _spread(variance, freedom, measured), "ladder_bow": (bow, bow - half, bow + half)}
+    shared, spreads, scatters = _explain(near, decisions.shape[1])
+    steepest = float(np.abs(slope).max())
+    volts = {
+        "offset_sigma": spreads[0],
+        "noise_sigma": scatters[0],
+        "hysteresis": _at_least_zero(_twice(shared["memory"])),
+        "ladder_bow": shared["bow"],
+    }
+    seconds = {"skew_sigma": spreads[1], "jitter_sigma": scatters[1]}
+    return {
+        name: Finding(*(part * lsb for part in profile), "V")
+        for name, profile in volts.items()
+    } | {
+        name: Finding(*(part / steepest for part in profile), "s")
+        for name, profile in seconds.items()
+    }
 
 
-def _spread(variance: float, freedom: float, measured: float) -> Estimate:
-    """Sigma behind a sample variance that holds `measured` of measurement error, with its chi-square interval."""
-    bounds = (variance, variance * freedom / chi2.ppf(1 - _TAIL, freedom), variance * freedom / chi2.ppf(_TAIL, freedom))
-    value, low, high = (float(np.sqrt(max(bound - measured, 0.0))) for bound in bounds)
-    return value, low, high
+def _explain(
+    near: NearDecisions, comparators: int
+) -> tuple[dict[str, Profile], list[Profile], list[Profile]]:
+    """Shared effects by name, spreads (offset, skew) and scatters (noise, jitter), in LSB at the largest slope."""
+    design = shared_design((near.index + 1) / (comparators + 1))
+    own = np.stack([near.position, *np.zeros((2, near.position.size))], axis=1)
+    spreads = np.array([0.3, 0.1])
+    # Too much scatter makes the first steps short and safe.
+    sigma = np.array([max(near.doubt / 2, near.spacing), 0.05 * near.doubt])
+    floor = near.spacing / 2
+    slope_square = near.slope**2
+    for _ in range(_ROUNDS):
+        before = np.concatenate([own.ravel(), sigma])
+        found = expand(near, own, scatter(sigma, slope_square, floor))
+        precision = found.information[:, :3, :3]
+        linear = found.score[:, :3] + (precision @ own[:, :, None])[:, :, 0]
+        spreads, own, rank = fit_effects(design, linear, precision, spreads)
+        # What each comparator spends on its own threshold and lead makes the scatter look too small.
+        spent = 0.5 * (rank + len(SHARED) / rank.size)
+        likelihood = scatter_likelihood(
+            sigma,
+            found.steepness,
+            floor,
+            found.score[:, 3] + spent,
+            found.information[:, 3, 3],
+        )
+        sigma = fit_scatter(likelihood, sigma)
+        change = np.abs(np.concatenate([own.ravel(), sigma]) - before)
+        if change.max() < 2e-3 * float(np.hypot(*sigma)) + 1e-2 * floor:
+            break
+    freedom = max(1, near.index.size - 3)
+    reach = float(t.ppf((1 + _CONFIDENCE) / 2, freedom))
+    effects = judge_effects(design, linear, precision, spreads, reach**2 / 2)
+    half = reach * np.sqrt(np.diag(effects.covariance))
+    shared = {
+        name: Profile(float(b), float(b - h), float(b + h))
+        for name, b, h in zip(SHARED, effects.shared, half, strict=True)
+    }
+    size = float(np.hypot(*sigma)) + floor
+    scatters = [
+        profile_interval(likelihood, sigma, which, 1.96**2 / 2, scale=size)
+        for which in (0, 1)
+    ]
+    return shared, [effects.offset, effects.skew], scatters
 
 
-def _skew(crossings: Crossings, slew: Floats) -> Estimate | None:
-    """Spread of each comparator's sampling instant, from how far the slope moves its threshold."""
-    moved = np.where(crossings.together, -crossings.memory, crossings.lead)
-    error = np.where(crossings.together, crossings.memory_error, crossings.lead_error)
-    known = np.isfinite(moved) & (slew > 0.2 * slew.max())
-    if np.count_nonzero(known) < 4:
-        return None
-    lever = slew[known]
-    weight = lever**2
-    instant = moved[known] / lever
-    # What all thresholds share is hysteresis or the clock itself, not skew of one against the mean.
-    shared = np.average(np.where(crossings.together[known], moved[known], 0.0))
-    instant = (moved[known] - np.where(crossings.together[known], shared, 0.0)) / lever
-    instant = instant - np.average(instant, weights=weight)
-    freedom = (float(weight.sum()) ** 2) / float((weight**2).sum()) - 1
-    variance = float(np.average(instant**2, weights=weight)) * (1 + 1 / freedom)
-    measured = float(np.average((error[known] / lever) ** 2, weights=weight))
-    return _spread(variance, freedom, measured)
+def _twice(profile: Profile) -> Profile:
+    return Profile(*(2 * part for part in profile))
 
 
-def _noise_and_jitter(crossings: Crossings, slew: Floats) -> dict[str, Estimate]:
-    """Weighted line through the noise's square against the slope's square: noise at no slope, jitter as its steepness."""
-    known = np.isfinite(crossings.noise)
-    if np.count_nonzero(known) < 4:
-        return {}
-    square = crossings.noise[known] ** 2
-    # The relative error of each is like the mean one; its own would favour those that are low by luck.
-    relative = crossings.noise_error[known] / crossings.noise[known]
-    error = 2 * float(np.mean(square)) * relative
-    basis = np.stack([np.ones_like(square), slew[known] ** 2 / slew.max() ** 2], axis=1) / error[:, None]
-    covariance = np.linalg.inv(basis.T @ basis)
-    solution = covariance @ basis.T @ (square / error)
-    rest = square / error - basis @ solution
-    covariance *= max(1.0, float(rest @ rest) / max(1, square.size - 2))
-    reach = norm.ppf(1 - _TAIL)
-    found: dict[str, Estimate] = {}
-    for place, (name, scale) in enumerate((("noise_sigma", 1.0), ("jitter_sigma", 1.0 / slew.max()))):
-        middle, half = float(solution[place]), reach * float(np.sqrt(covariance[place, place]))
-        value, low, high = (scale * float(np.sqrt(max(v, 0.0))) for v in (middle, middle - half, middle + half))
-        found[name] = (value, low, high)
-    return found
+def _at_least_zero(profile: Profile) -> Profile:
+    return Profile(*(max(part, 0.0) for part in profile))

@@ -1,0 +1,52 @@
+"""What scatters from sample to sample: noise, the same at every slope, and jitter, which grows with the slope."""
+
+from collections.abc import Callable
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.optimize import minimize
+
+Floats = NDArray[np.float64]
+
+
+def scatter(sigma: Floats, slope_square: Floats, floor: float) -> Floats:
+    """Total scatter in LSB where the slope's square against the largest is (K,): sqrt(noise^2 + slope^2 jitter^2).
+
+    sigma: noise and jitter at the largest slope, in LSB; floor: what the samples' own spacing adds, in LSB.
+
+    >>> scatter(np.array([3.0, 4.0]), np.array([0.0, 1.0]), 0.0)
+    array([3., 5.])
+    """
+    return np.sqrt(sigma[0] ** 2 + sigma[1] ** 2 * slope_square + floor**2)
+
+
+def scatter_likelihood(
+    guess: Floats,
+    slope_square: Floats,
+    floor: float,
+    score: Floats,
+    information: Floats,
+) -> Callable[[Floats], float]:
+    """Log-likelihood of (noise, jitter) in LSB, to second order in the logarithm of each comparator's scatter.
+
+    guess: the two that score and information, each (K,), were worked out about.
+    """
+    before = np.log(scatter(guess, slope_square, floor))
+
+    def likelihood(sigma: Floats) -> float:
+        change = np.log(scatter(sigma, slope_square, floor)) - before
+        return float(score @ change - 0.5 * information @ change**2)
+
+    return likelihood
+
+
+def fit_scatter(likelihood: Callable[[Floats], float], guess: Floats) -> Floats:
+    """Noise and jitter that the log-likelihood likes best, a factor of four from the guess at most."""
+    size = float(np.hypot(*guess)) + 1e-12
+    found = minimize(
+        lambda part: -likelihood(part * size),
+        np.maximum(guess / size, 0.05),
+        method="L-BFGS-B",
+        bounds=[(0.0, 4.0)] * 2,
+    )
+    return np.asarray(found.x, dtype=float) * size
