@@ -87,7 +87,7 @@ def _explain(
     spreads = np.array([0.3, 0.1])
     # Too much scatter makes the first steps short and safe.
     sigma = np.array([max(near.doubt / 2, near.spacing), 0.05 * near.doubt])
-    floor = near.spacing / 2
+    floor = 0.7 * near.spacing
     slope_square = near.slope**2
     for _ in range(_ROUNDS):
         before = np.concatenate([own.ravel(), sigma])

@@ -12,6 +12,9 @@ Floats = NDArray[np.float64]
 
 # A shared effect that the record does not tell at all stays within so many LSB of nothing.
 _VAGUE = 10.0
+# Spreads in LSB: where the search for one starts at least, and within which it stays, as logarithms.
+_SEEN = 0.05
+_LOG_SPREAD = (-9.0, 5.0)
 SHARED = ("offset", "gain", "bow", "memory", "lead")
 
 
@@ -92,11 +95,20 @@ def fit_effects(
 ) -> tuple[Floats, Floats, Floats]:
     """Spreads (offset, skew) that the restricted likelihood likes best, and each comparator's (K, 3), with its rank."""
 
-    def cost(sigma: Floats) -> float:
+    def cost(logarithm: Floats) -> float:
+        sigma = np.exp(np.clip(logarithm, *_LOG_SPREAD))
         return -_solve(sigma, design, linear, precision).likelihood
 
-    found = minimize(cost, start, method="L-BFGS-B", bounds=[(0.0, None)] * 2)
-    sigma = np.asarray(found.x, dtype=float)
+    # The likelihood is flat where a spread is too small to be seen; a simplex that starts wide does not stay there.
+    centre = np.log(np.maximum(start, _SEEN))
+    simplex = centre + np.array([[0.0, 0.0], [1.0, 0.2], [-0.2, 1.0]])
+    found = minimize(
+        cost,
+        centre,
+        method="Nelder-Mead",
+        options={"initial_simplex": simplex, "xatol": 0.01, "fatol": 1e-3},
+    )
+    sigma = np.exp(np.clip(np.asarray(found.x, dtype=float), *_LOG_SPREAD))
     solution = _solve(sigma, design, linear, precision)
     return sigma, solution.own, solution.rank
 

@@ -12,12 +12,14 @@ Floats = NDArray[np.float64]
 def scatter(sigma: Floats, slope_square: Floats, floor: float) -> Floats:
     """Total scatter in LSB where the slope's square against the largest is (K,): sqrt(noise^2 + slope^2 jitter^2).
 
-    sigma: noise and jitter at the largest slope, in LSB; floor: what the samples' own spacing adds, in LSB.
+    sigma: noise and jitter at the largest slope, in LSB; floor: spacing of the samples there, in LSB. Far below it no
+    record tells the scatter, so that the result levels out there, and hardly feels the floor above it.
 
     >>> scatter(np.array([3.0, 4.0]), np.array([0.0, 1.0]), 0.0)
     array([3., 5.])
     """
-    return np.sqrt(sigma[0] ** 2 + sigma[1] ** 2 * slope_square + floor**2)
+    told = sigma[0] ** 2 + sigma[1] ** 2 * slope_square
+    return (told**2 + (floor**2 * slope_square) ** 2 + 1e-40) ** 0.25
 
 
 def scatter_likelihood(
