@@ -48,18 +48,17 @@ class Expansion:
     steepness: Floats
 
 
-def balance(value: Floats, decisions: NDArray[np.bool_]) -> Floats:
+def balance(value: Floats, zeros: NDArray[np.int64]) -> Floats:
     """Value below which as many samples lie as were decided 0, for each comparator: (M,), in the unit of `value`.
 
     That is the histogram test's code transition level, for any input whose value at each sample (n,) is known; nan for
-    a comparator that always decided the same. decisions: (n, M) bool.
+    a comparator that always decided the same. zeros: (M,) how often each decided 0.
     Source: IEEE Std 1241-2010, histogram test (memory).
 
-    >>> balance(np.array([3.0, 1.0, 2.0]), np.array([[True], [False], [True]]))
-    array([1.5])
+    >>> balance(np.array([3.0, 1.0, 2.0]), np.array([1, 3]))
+    array([1.5, nan])
     """
     ordered = np.sort(value)
-    zeros = value.size - np.count_nonzero(decisions, axis=0)
     inner = np.clip(zeros, 1, value.size - 1)
     level = 0.5 * (ordered[inner - 1] + ordered[inner])
     return np.where(inner == zeros, level, np.nan)
@@ -73,11 +72,13 @@ def near_decisions(
     value: (n,) input in LSB; slope: (n,) its slope, any unit; decisions: (n, M) bool, in the order taken. Long records
     are cut short once they say enough.
     """
-    level = balance(value, decisions)
+    zeros = value.size - np.count_nonzero(decisions, axis=0)
+    level = balance(value, zeros)
     reached = np.flatnonzero(np.isfinite(level))
     order = np.argsort(value, kind="stable")
-    ordered = value[order]
-    spacing = float(np.pi * np.ptp(value) / 2 / value.size)
+    # Samples that repeat the same phase of the input come no closer than those of one period.
+    apart = np.count_nonzero(np.diff(value[order]) > 1e-9 * np.ptp(value)) + 1
+    spacing = float(np.pi * np.ptp(value) / 2 / apart)
     doubt = _doubt(value, decisions, level, reached) + 10 * spacing
     samples = int(min(value.size, max(1024, _MOST_ROWS / (2 * doubt + 1))))
     order = order[order < samples]
@@ -112,13 +113,13 @@ def _doubt(
     level: Floats,
     reached: NDArray[np.int64],
 ) -> float:
-    """Distance from a threshold within which nearly every decision lies that disagrees with it."""
-    far = 0.0
+    """Distance from a threshold beyond which a decision that disagrees with it is a rare accident."""
+    far = [np.zeros(1)]
     for k in reached:
         wrong = decisions[:, k] != (value > level[k])
-        if wrong.any():
-            far = max(far, float(np.abs(value[wrong] - level[k]).max()))
-    return 1.2 * far
+        far.append(np.abs(value[wrong] - level[k]))
+    # Nothing is lost beyond, and the choice of rows does not look at their decisions: it favours none.
+    return 1.6 * float(np.quantile(np.concatenate(far), 0.99))
 
 
 def expand(near: NearDecisions, guess: Floats, scatter: Floats) -> Expansion:

@@ -69,13 +69,14 @@ def diagnose(
         "ladder_bow": shared["bow"],
     }
     seconds = {"skew_sigma": spreads[1], "jitter_sigma": scatters[1]}
-    return {
-        name: Finding(*(part * lsb for part in profile), "V")
-        for name, profile in volts.items()
-    } | {
-        name: Finding(*(part / steepest for part in profile), "s")
-        for name, profile in seconds.items()
+    return {name: _finding(p, lsb, "V") for name, p in volts.items()} | {
+        name: _finding(p, 1 / steepest, "s") for name, p in seconds.items()
     }
+
+
+def _finding(profile: Profile, scale: float, unit: str) -> Finding:
+    value, low, high = (part * scale for part in profile)
+    return Finding(value, low, high, unit)
 
 
 def _explain(

@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.optimize import minimize
+from scipy.optimize import Bounds, minimize
 
 Floats = NDArray[np.float64]
 
@@ -45,10 +45,10 @@ def scatter_likelihood(
 def fit_scatter(likelihood: Callable[[Floats], float], guess: Floats) -> Floats:
     """Noise and jitter that the log-likelihood likes best, a factor of four from the guess at most."""
     size = float(np.hypot(*guess)) + 1e-12
-    found = minimize(
-        lambda part: -likelihood(part * size),
-        np.maximum(guess / size, 0.05),
-        method="L-BFGS-B",
-        bounds=[(0.0, 4.0)] * 2,
-    )
+
+    def cost(part: Floats) -> float:
+        return -likelihood(part * size)
+
+    start = np.maximum(guess / size, 0.05)
+    found = minimize(cost, start, method="L-BFGS-B", bounds=Bounds([0, 0], [4, 4]))
     return np.asarray(found.x, dtype=float) * size
