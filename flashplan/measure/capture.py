@@ -85,6 +85,8 @@ def _read_csv(path: Path) -> tuple[NDArray[np.float64], int]:
     named = not _numbers(next(csv.reader([lines[0]])))
     first_line = 2 if named else 1
     body = lines[1:] if named else lines
+    if not body:
+        raise InputError("holds a line of names and no samples", str(path))
     try:
         table = np.loadtxt(body, delimiter=",", ndmin=2, comments=None)
     except ValueError:

@@ -16,6 +16,8 @@ Floats = NDArray[np.float64]
 
 _CONFIDENCE = 0.95
 _ROUNDS = 40
+# Neighbours one LSB apart pass each other in one of 75 pairs at this scatter of their gap.
+_MOST_GAP_LSB = 0.45
 _FEWEST = 5  # comparators, without which nothing can be said of how they differ
 
 
@@ -46,12 +48,17 @@ class Finding:
 
 
 def diagnose(
-    value: Floats, slope: Floats, decisions: NDArray[np.bool_], lsb: float
+    value: Floats,
+    slope: Floats,
+    decisions: NDArray[np.bool_],
+    lsb: float,
+    rebuilt: bool = False,
 ) -> dict[str, Finding]:
     """Explain the decisions of a record whose input is known up to gain, offset and delay.
 
     value: (n,) input in LSB; slope: (n,) in LSB/s; decisions: (n, M) bool, lowest threshold first, in the order taken;
-    lsb in V. Empty where fewer than five thresholds were reached.
+    lsb in V; rebuilt: the decisions come from codes, that is in order of size. Empty where fewer than five thresholds
+    were reached, and where rebuilt decisions so often stand for another comparator's that they would mislead.
 
     The offset's spread is about a line with a bow and includes resistor mismatch. Noise and jitter are told apart by how
     they grow with the slope, hysteresis and skew by what each comparator last decided; an interval starts at zero, and
@@ -60,7 +67,10 @@ def diagnose(
     near = near_decisions(value, slope, decisions)
     if near.position.size < _FEWEST:
         return {}
-    shared, spreads, scatters = _explain(near, decisions.shape[1])
+    shared, spreads, scatters, gaps = _explain(near, decisions.shape[1])
+    # Noise of its own moves each comparator, jitter moves all together.
+    if rebuilt and np.hypot(gaps, np.sqrt(2) * scatters[0].value) > _MOST_GAP_LSB:
+        return {}
     steepest = float(np.abs(slope).max())
     volts = {
         "offset_sigma": spreads[0],
@@ -81,8 +91,9 @@ def _finding(profile: Profile, scale: float, unit: str) -> Finding:
 
 def _explain(
     near: NearDecisions, comparators: int
-) -> tuple[dict[str, Profile], list[Profile], list[Profile]]:
-    """Shared effects by name, spreads (offset, skew) and scatters (noise, jitter), in LSB at the largest slope."""
+) -> tuple[dict[str, Profile], list[Profile], list[Profile], float]:
+    """Shared effects by name, spreads (offset, skew) and scatters (noise, jitter), in LSB at the largest slope; last how
+    far the gaps between neighbours' trip points scatter under a rising or a falling input, whichever is more."""
     design = shared_design((near.index + 1) / (comparators + 1))
     own = np.stack([near.position, *np.zeros((2, near.position.size))], axis=1)
     spreads = np.array([0.3, 0.1])
@@ -122,7 +133,9 @@ def _explain(
         profile_interval(likelihood, sigma, which, 1.96**2 / 2, scale=size)
         for which in (0, 1)
     ]
-    return shared, [effects.offset, effects.skew], scatters
+    lead = own[:, 2] * np.sqrt(found.steepness)
+    gaps = max(float(np.diff(own[:, 0] + way * lead).std()) for way in (-1, 1))
+    return shared, [effects.offset, effects.skew], scatters, gaps
 
 
 def _twice(profile: Profile) -> Profile:

@@ -64,7 +64,8 @@ def measure_capture(
     capture: from `read_capture`; limits: of budget lines by name, SI.
     The input's amplitude and middle are taken from the codes, so that gain and offset of the converter are not told from
     those of the source: the line "none" comes out as "best" does. Where the capture holds codes only, comparator k is
-    taken to have decided 1 at every code of k or more: bubbles are then invisible, and errors that make them look smaller.
+    taken to have decided 1 at every code of k or more: bubbles are then invisible, and the diagnosis is left empty where
+    errors are large enough to make many.
     Raises InputError for a record that holds no sine of at least five cycles and half the range within the range.
     Source: IEEE Std 1241-2010 (memory).
     """
@@ -79,7 +80,10 @@ def measure_capture(
         decisions = some[:, None] > np.arange(plan.comparators)
     length = decisions.shape[0]
     slope = 2 * np.pi * frequency * found.amplitude * np.cos(found.phase)
-    diagnosis = diagnose(found.value[:length], slope[:length], decisions, plan.lsb)
+    rebuilt = capture.decisions is None
+    diagnosis = diagnose(
+        found.value[:length], slope[:length], decisions, plan.lsb, rebuilt
+    )
     return MeasureResult(
         samples=codes.size,
         cycles=found.cycles,
@@ -93,7 +97,7 @@ def measure_capture(
         sndr_db=sndr,
         sfdr_db=sfdr,
         enob=float(enob_from_sndr(sndr)),
-        rebuilt=capture.decisions is None,
+        rebuilt=rebuilt,
         diagnosis={name: _judged(f, limits.get(name)) for name, f in diagnosis.items()},
     )
 
