@@ -79,7 +79,9 @@ def near_decisions(
     # Samples that repeat the same phase of the input come no closer than those of one period.
     apart = np.count_nonzero(np.diff(value[order]) > 1e-9 * np.ptp(value)) + 1
     spacing = float(np.pi * np.ptp(value) / 2 / apart)
-    doubt = _doubt(value, decisions, level, reached) + 10 * spacing
+    # One comparator's decisions side by side: hundreds of strided walks through the record would take far longer.
+    decided = np.ascontiguousarray(decisions.T)
+    doubt = _doubt(value, decided, level, reached) + 10 * spacing
     samples = int(min(value.size, max(1024, _MOST_ROWS / (2 * doubt + 1))))
     order = order[order < samples]
     ordered = value[order]
@@ -100,8 +102,8 @@ def near_decisions(
         owner=owner,
         value=value[row],
         slope=slope[row] / np.abs(slope).max(),
-        last=2.0 * decisions[row - 1, column] - 1.0,
-        sign=2.0 * decisions[row, column] - 1.0,
+        last=2.0 * decided[column, row - 1] - 1.0,
+        sign=2.0 * decided[column, row] - 1.0,
         spacing=spacing,
         doubt=doubt,
     )
@@ -109,14 +111,14 @@ def near_decisions(
 
 def _doubt(
     value: Floats,
-    decisions: NDArray[np.bool_],
+    decided: NDArray[np.bool_],
     level: Floats,
     reached: NDArray[np.int64],
 ) -> float:
     """Distance from a threshold beyond which a decision that disagrees with it is a rare accident."""
     far = [np.zeros(1)]
     for k in reached:
-        wrong = decisions[:, k] != (value > level[k])
+        wrong = decided[k] != (value > level[k])
         far.append(np.abs(value[wrong] - level[k]))
     # Nothing is lost beyond, and the choice of rows does not look at their decisions: it favours none.
     return 1.6 * float(np.quantile(np.concatenate(far), 0.99))

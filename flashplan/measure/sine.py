@@ -55,10 +55,10 @@ def find_sine(
     count = codes.size
     if np.ptp(codes) == 0:
         raise InputError(f"every sample holds code {codes[0]}; a sine is needed")
-    cycles, fit, error = _four_parameters(codes.astype(float))
-    if cycles < _FEWEST_CYCLES:
+    cycles, error = _four_parameters(codes.astype(float))
+    if cycles < _FEWEST_CYCLES - max(3 * error, 1e-3):
         raise InputError(
-            f"holds {cycles:.2g} cycles of its largest sine; at least {_FEWEST_CYCLES} are needed "
+            f"holds {cycles:.3g} cycles of its largest sine; at least {_FEWEST_CYCLES} are needed "
             "(a ramp or a drift shows so too)"
         )
     coherent = abs(cycles - round(cycles)) < min(3 * error, 0.02)
@@ -138,8 +138,8 @@ def _three_parameters(codes: Floats, cycles: float) -> tuple[Floats, Floats]:
     return fit, turn + float(np.arctan2(fit[1], fit[0]))
 
 
-def _four_parameters(codes: Floats) -> tuple[float, Floats, float]:
-    """Cycles, fit, and the standard error of the cycles that the rest allows."""
+def _four_parameters(codes: Floats) -> tuple[float, float]:
+    """Cycles of the largest sine, and their standard error, which the rest allows."""
     count = codes.size
     spectrum = np.abs(
         np.fft.rfft((codes - codes.mean()) * blackmanharris(count, sym=False))
@@ -149,7 +149,6 @@ def _four_parameters(codes: Floats) -> tuple[float, Floats, float]:
     left, middle, right = np.log(spectrum[top - 1 : top + 2] + 1e-30)
     cycles = top + 0.5 * (left - right) / (left - 2 * middle + right - 1e-30)
     time = np.arange(count) / count - 0.5
-    fit = np.zeros(3)
     for _ in range(8):
         fit, phase = _three_parameters(codes, cycles)
         amplitude = float(np.hypot(fit[0], fit[1]))
@@ -160,4 +159,4 @@ def _four_parameters(codes: Floats) -> tuple[float, Floats, float]:
         if abs(step) < 1e-9:
             break
     error = float(np.sqrt(rest @ rest / count / (lever @ lever)))
-    return float(cycles), fit, error
+    return float(cycles), error
