@@ -100,15 +100,27 @@ def check(
 
 @app.command()
 def array(
-    plan: PlanFile, json: AsJson = False, out: OutFile = None, workers: Workers = 1
+    plan: PlanFile,
+    json: AsJson = False,
+    out: OutFile = None,
+    workers: Workers = 1,
+    at_limits: Annotated[
+        bool,
+        typer.Option(
+            "--at-limits",
+            help="put every comparator and the clock on the budget's limits",
+        ),
+    ] = False,
 ) -> None:
     """Simulate the array: yield, DNL/INL, SNDR/ENOB, bubbles, word errors."""
     import flashplan as fp
     from flashplan.report.tables import array_table
 
     loaded = fp.load_plan(plan)
-    with _progress() as progress:
-        result = fp.simulate_array(loaded, workers=workers, progress=progress)
+    if at_limits:
+        loaded = fp.plan_at_limits(fp.derive_budget(loaded))
+    with _progress() as progress, _executor(workers) as executor:
+        result = fp.simulate_array(loaded, executor=executor, progress=progress)
     _emit(result.to_dict(), lambda: array_table(loaded, result), json, out)
     _judge(all(result.goals_met.values()))
 
@@ -122,9 +134,87 @@ def decoders(
     from flashplan.report.tables import decoder_table
 
     loaded = fp.load_plan(plan)
-    with _progress() as progress:
-        table = fp.compare_decoders(loaded, workers=workers, progress=progress)
+    with _progress() as progress, _executor(workers) as executor:
+        table = fp.compare_decoders(loaded, executor=executor, progress=progress)
     _emit(table.to_dict(), lambda: decoder_table(table), json, out)
+
+
+@app.command()
+def sweep(
+    plan: PlanFile,
+    vary: Annotated[
+        list[str],
+        typer.Option(
+            "--vary",
+            metavar="KEY=...",
+            help="START:STOP:COUNT, with :log behind, or a list; repeatable",
+            show_default=False,
+        ),
+    ],
+    store: Annotated[
+        Path | None, typer.Option("--store", metavar="FILE", help="keeps finished work")
+    ] = None,
+    csv: Annotated[
+        Path | None,
+        typer.Option("--csv", metavar="FILE", help="write the points as CSV"),
+    ] = None,
+    figure: Annotated[
+        Path | None,
+        typer.Option("--figure", metavar="FILE", help="draw one or two axes as SVG"),
+    ] = None,
+    json: AsJson = False,
+    out: OutFile = None,
+    workers: Workers = 1,
+    cluster: Annotated[
+        str | None,
+        typer.Option("--cluster", metavar="ADDRESS", help="a Dask scheduler"),
+    ] = None,
+) -> None:
+    """A line or grid of plans: each point's yield, effective bits, word errors and power."""
+    import flashplan as fp
+    from flashplan.files import write_whole
+    from flashplan.plan.axis import parse_axis
+    from flashplan.report.sweep_files import sweep_csv, sweep_svg
+    from flashplan.report.tables import sweep_table
+
+    loaded, axes = fp.load_plan(plan), [parse_axis(text) for text in vary]
+    if figure is not None and len(axes) > 2:
+        raise InputError(f"a figure takes one or two axes, not {len(axes)}", "--figure")
+    with _progress() as progress, _executor(workers, cluster) as executor:
+        result = fp.sweep(
+            loaded, axes, store=store, executor=executor, progress=progress
+        )
+    if csv is not None:
+        write_whole(csv, sweep_csv(result))
+    if figure is not None:
+        write_whole(figure, sweep_svg(loaded, result))
+    _emit(result.to_dict(), lambda: sweep_table(result), json, out)
+
+
+@app.command()
+def measure(
+    codes: Annotated[
+        Path,
+        typer.Argument(
+            metavar="CODES",
+            help="CSV or .npy: one column of codes, or one per comparator",
+        ),
+    ],
+    plan: Annotated[
+        Path,
+        typer.Option(
+            "--plan", metavar="PLAN", help="plan file (TOML)", show_default=False
+        ),
+    ],
+    json: AsJson = False,
+    out: OutFile = None,
+) -> None:
+    """Metrics and diagnosis of captured codes."""
+    import flashplan as fp
+    from flashplan.report.tables import measure_table
+
+    result = fp.measure(codes, fp.load_plan(plan))
+    _emit(result.to_dict(), lambda: measure_table(result), json, out)
 
 
 @app.command()
@@ -142,9 +232,9 @@ def report(
     import flashplan as fp
 
     folder = Path("reports") / plan.stem if out is None else out
-    with _progress() as progress:
+    with _progress() as progress, _executor(workers) as executor:
         written = fp.write_report(
-            fp.load_plan(plan), folder, workers=workers, progress=progress
+            fp.load_plan(plan), folder, executor=executor, progress=progress
         )
     print(f"{written.headline}\nwrote {written.page}")
     _judge(written.met)
@@ -169,6 +259,12 @@ def _emit(
 
         Console(highlight=False).print(table())
     sys.stdout.flush()
+
+
+def _executor(workers: int, cluster: str | None = None) -> Any:
+    from flashplan.study.workers import study_executor
+
+    return study_executor(workers, cluster)
 
 
 def _progress() -> Any:

@@ -1,8 +1,11 @@
 """Output files, written whole or not at all."""
 
+import csv
+import io
 import json
 import os
 import tempfile
+from collections.abc import Iterable, Sequence
 from pathlib import Path
 from typing import Any
 
@@ -34,6 +37,15 @@ def write_whole(path: str | Path, content: str | bytes) -> None:
 def as_json(document: dict[str, Any]) -> str:
     """One JSON document as text; a number that is not finite is an error of ours, not JSON."""
     return json.dumps(document, indent=2, allow_nan=False, ensure_ascii=False) + "\n"
+
+
+def as_csv(columns: Sequence[str], rows: Iterable[Sequence[Any]]) -> str:
+    """A table with its column names in the first line; what is not known is empty."""
+    buffer = io.StringIO()
+    writer = csv.writer(buffer, lineterminator="\n")
+    writer.writerow(columns)
+    writer.writerows(["" if cell is None else cell for cell in row] for row in rows)
+    return buffer.getvalue()
 
 
 def _umask() -> int:

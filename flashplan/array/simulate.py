@@ -1,5 +1,7 @@
 """The whole array against the plan's goals."""
 
+from concurrent.futures import Executor
+
 import numpy as np
 
 from flashplan.array import dynamic, static
@@ -24,7 +26,10 @@ _TIME_KEYS = ("regeneration_tau", "delay")
 
 
 def simulate_array(
-    plan: Plan, cell: Datasheet, progress: Progress | None = None
+    plan: Plan,
+    cell: Datasheet,
+    executor: Executor | None = None,
+    progress: Progress | None = None,
 ) -> ArrayResult:
     """Draw the arrays, convert the sine, and judge both against the goals.
 
@@ -37,12 +42,14 @@ def simulate_array(
     if plan.converter.source_resistance is not None and cell.input_capacitance is None:
         left_out += ("input_capacitance",)
     static_part = (
-        None if "offset_sigma" in left_out else _static(plan, cell, ladder, progress)
+        None
+        if "offset_sigma" in left_out
+        else _static(plan, cell, ladder, executor, progress)
     )
     dynamic_part = (
         None
         if set(left_out) & set(_DYNAMIC_KEYS[:4])
-        else _dynamic(plan, cell, ladder, progress)
+        else _dynamic(plan, cell, ladder, executor, progress)
     )
     word_error_rate = (
         None
@@ -83,26 +90,36 @@ def array_power(
 
 
 def _static(
-    plan: Plan, cell: Datasheet, ladder: LadderResult, progress: Progress | None
+    plan: Plan,
+    cell: Datasheet,
+    ladder: LadderResult,
+    executor: Executor | None,
+    progress: Progress | None,
 ) -> StaticResult:
     systematic = systematic_errors(ladder)
     offset = (cell.offset_sigma or 0.0) / plan.lsb
     trials = run_study(
         static.StaticChunk(plan, offset, systematic),
         static.chunk_count(plan),
-        seed=plan.array.seed,
+        seed=2 * plan.array.seed,
+        executor=executor,
         progress=progress,
     )
     return static.gather(plan, cell, systematic, trials)
 
 
 def _dynamic(
-    plan: Plan, cell: Datasheet, ladder: LadderResult, progress: Progress | None
+    plan: Plan,
+    cell: Datasheet,
+    ladder: LadderResult,
+    executor: Executor | None,
+    progress: Progress | None,
 ) -> DynamicResult:
     trials = run_study(
         dynamic.OneArray(plan, cell, ladder),
         plan.array.dynamic_arrays,
-        seed=plan.array.seed + 1,
+        seed=2 * plan.array.seed + 1,
+        executor=executor,
         progress=progress,
     )
     return dynamic.gather(plan, cell, trials)

@@ -12,8 +12,8 @@ from flashplan.metrics.ideal import (
     ideal_sndr_db,
     sndr_from_enob,
 )
-from flashplan.metrics.quadratic_form import quadratic_form_quantile
 from flashplan.metrics.pinned_walk import walk_spectrum
+from flashplan.metrics.quadratic_form import quadratic_form_quantile
 from flashplan.metrics.sine import sine_slews, sine_weights
 from flashplan.plan.model import Plan
 

@@ -1,8 +1,9 @@
 """Integrals of a smooth function over a moving band, as one matrix on panels of Gauss nodes."""
 
+import itertools
 from collections.abc import Iterable
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,22 +22,24 @@ class Panels:
 
 
 def make_panels(
-    half: float, breaks: Iterable[float], width: float, refine: int = 0
+    half: float, breaks: Iterable[float], width: float, nodes_per_width: float
 ) -> Panels:
     """Cut [-half, half] at every break (taken with both signs) and give each panel nodes for its length.
 
-    width: length over which the integrands change by their own size; panels are cut to at most 5 of it. refine adds
-    nodes to every panel, to show that the answer does not move.
+    width: length over which the integrands change by their own size; panels are cut to at most 5 of it. A panel gets
+    nodes_per_width nodes for each width, and for two widths more.
     """
     inner = [b for b in breaks if 0 <= abs(b) < half]
     marks = np.unique(np.round(np.array([half, *inner]) / half, 12)) * half
     marks = np.unique(np.concatenate([-marks, marks]))
     edges: list[float] = [marks[0]]
-    for left, right in zip(marks[:-1], marks[1:], strict=True):
+    for left, right in itertools.pairwise(marks):
         pieces = max(1, int(np.ceil((right - left) / (5.0 * width))))
         edges.extend(np.linspace(left, right, pieces + 1)[1:])
     lengths = np.diff(edges)
-    orders = tuple(int(np.ceil(6 + 2.8 * s / width)) + refine for s in lengths)
+    orders = tuple(
+        int(np.ceil(nodes_per_width * (2.0 + size / width))) for size in lengths
+    )
     nodes = [
         left + 0.5 * size * (1 + gauss_legendre(order)[0])
         for left, size, order in zip(edges[:-1], lengths, orders, strict=True)
@@ -73,7 +76,7 @@ def band_matrix(panels: Panels, lower: Array, upper: Array) -> Array:
     return matrix
 
 
-@lru_cache(maxsize=None)
+@cache
 def gauss_legendre(order: int) -> tuple[Array, Array, Array]:
     """Nodes and weights on [-1, 1], and the matrix from values at the nodes to Legendre coefficients."""
     nodes, weights = np.polynomial.legendre.leggauss(order)

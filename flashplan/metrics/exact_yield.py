@@ -6,6 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike
 
+from flashplan.metrics.best_fit_yield import best_fit_yield
 from flashplan.metrics.end_point_yield import end_point_yield
 from flashplan.metrics.fixed_line_yield import fixed_line_yield
 from flashplan.metrics.linearity import FITS, Fit
@@ -42,7 +43,7 @@ def linearity_yield(
     times, and an end-point line is averaged over the two outer offsets.
 
     offset_sigma_lsb: standard deviation of a normal offset, in LSB, > 0; offset_density: any other density in its
-    place. dnl_lsb, inl_lsb: goals in LSB, > 0; math.inf switches one off. fit: the reference line, see dnl_inl.
+    place (see offset_density.py). dnl_lsb, inl_lsb: goals in LSB, > 0; math.inf switches one off. fit: the reference line, see dnl_inl.
     resistor_sigma: relative standard deviation of one resistor. systematic_lsb: (2**bits - 1,) in LSB. refine: further
     nodes per panel, to show that the answer stands. Relative error, of yield and loss alike down to 1e-9: below 1e-6
     for fit "none" without resistor mismatch, below 1e-3 otherwise. Raises ValueError for arguments out of range.
@@ -66,7 +67,13 @@ def linearity_yield(
             raise ValueError(
                 f"systematic errors must be {count} finite numbers, one for each threshold"
             )
-    solve = {"none": fixed_line_yield, "endpoint": end_point_yield}[fit]
+    moving = resistor_sigma > 0 or systematic.any() or fit != "none"
+    if offset_density.kinks and moving:
+        raise ValueError(
+            "a density with a jump or a bounded support works with fit none alone, without resistor mismatch and "
+            "systematic errors; give it a soft edge"
+        )
+    solve = {"none": fixed_line_yield, "endpoint": end_point_yield, "best": best_fit_yield}[fit]
     loss, survive = solve(
         bits, offset_density, dnl_lsb, inl_lsb, resistor_sigma, systematic, refine
     )

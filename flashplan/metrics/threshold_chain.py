@@ -1,6 +1,6 @@
 """The chain of thresholds: what is lost and what survives, stepped down from the last threshold to the first."""
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from flashplan.metrics.band_operator import Panels, band_matrix, make_panels
 from flashplan.metrics.offset_density import OffsetDensity
-from flashplan.metrics.resistor_bridge import Bridge
+from flashplan.metrics.gaussian_path import GaussianPath
 
 # Kinks of the iterates soften by one derivative per step; deeper ones than this are below the quadrature's error.
 _KINK_DEPTH = 9
@@ -36,19 +36,20 @@ def make_band(
     dnl: float,
     density: OffsetDensity,
     hard: Sequence[float] = (),
-    refine: int = 0,
+    nodes_per_width: float = 2.8,
 ) -> Band:
     """Lay panels with breaks where the iterates have kinks: a whole number of DNL bands from each hard edge.
 
     half: where the domain ends, in LSB; hard: where the integrand itself jumps or has a kink, beside +-half.
     """
+    hard_edges = (half, *hard) if half < density.reach else hard
     breaks = [
         edge + sign * steps * dnl
-        for edge in (half, *hard)
+        for edge in hard_edges
         for steps in range(_KINK_DEPTH if np.isfinite(dnl) else 1)
         for sign in ((1, -1) if np.isfinite(dnl) else (1,))
     ]
-    return Band(make_panels(half, breaks, density.width, refine), half, dnl)
+    return Band(make_panels(half, breaks, density.width, nodes_per_width), half, dnl)
 
 
 def homogeneous_chain(
@@ -92,56 +93,88 @@ def _fold(matrix: NDArray) -> NDArray:
 class Stretch:
     """What moves the thresholds of a chain apart from their own offsets, for several columns of a batch at once.
 
-    Threshold i of `count` passes where its offset is gain * u + shift_i - (its bridge tap) with |u| inside the band.
-    shift (count, columns) and gain (columns,) in LSB and LSB per LSB; complex shifts continue the density. first_tap:
-    the bridge tap of the first threshold. tied: the chain starts and ends at u = 0 (at thresholds outside `count`).
+    Threshold i of `count` has the offset gain * u + shift_i + deviation_i z_i, and passes with |u| inside the band.
+    shift (count, columns) in LSB, complex to continue the density analytically; gain (columns,); path: the movement
+    that is averaged over. tied: the chain leaves from u = 0 and must end within one DNL band of u = 0.
     """
 
     shift: NDArray
     gain: NDArray[np.float64]
-    bridge: Bridge
-    first_tap: int
+    path: GaussianPath
     tied: bool
 
 
-def stepped_chain(
-    band: Band, density: OffsetDensity, stretch: Stretch
-) -> tuple[NDArray, NDArray]:
-    """Return loss and survival, each (columns,), of a chain whose weights differ from threshold to threshold.
+Hazard = Callable[[NDArray, NDArray], NDArray]
 
-    The state is (u, z): the value of the last threshold and the normalised position of the resistor string. Cost:
-    count n^2 columns modes, with n the panels' nodes.
+
+def stepped_chain(
+    band: Band,
+    density: OffsetDensity,
+    stretch: Stretch,
+    hazard: Hazard | None = None,
+    repeats: float = 0.0,
+) -> tuple[NDArray, NDArray]:
+    """Return loss and survival of a chain whose weights differ from threshold to threshold: both (columns, modes).
+
+    The modes are the values at the nodes of the path's state before the chain. The state is (u, z): the value of the
+    last threshold and the position of the path. Cost: count n (n + modes) columns modes, n the nodes of the panels.
+
+    hazard, repeats: each step stands for this many thresholds beside its own, whose survival is exp(-hazard(moved,
+    gain)) each, from the threshold's movement (columns, modes) and the gain (columns, 1); see long_chain.
     """
     count, columns = stretch.shift.shape
-    x, bridge, gain = band.panels.nodes, stretch.bridge, stretch.gain[:, np.newaxis]
-    room = band.dnl if stretch.tied else np.inf
-    modes = len(bridge.nodes)
+    x, path, gain = band.panels.nodes, stretch.path, stretch.gain[:, np.newaxis]
+    modes = len(path.nodes)
     kind = np.result_type(stretch.shift, float)
     loss = np.zeros((len(x), columns, modes), kind)
     survive = np.ones((len(x), columns, modes), kind)
-    between = band_matrix(band.panels, *band.limits(x))
+    between = _Step(band, *band.limits(x))
     for i in range(count - 1, -1, -1):
-        at = x if i else np.zeros(1)
-        lower, upper = band.limits(at, room if i == count - 1 else np.inf)
+        moved = stretch.shift[i][:, np.newaxis] + path.deviation[i] * path.nodes
+        step = between
         if i == 0 and not stretch.tied:
-            lower, upper = np.array([-band.half]), np.array([band.half])
-        if 0 < i < count - 1:
-            integrate = between
-        else:
-            integrate = band_matrix(band.panels, lower, upper)
-        tap = stretch.first_tap + i
-        moved = stretch.shift[i][:, np.newaxis] - bridge.deviation(tap) * bridge.nodes
-        weight = gain * density.pdf(gain * x[:, np.newaxis, np.newaxis] + moved)
-        fails = density.cdf(gain * lower[:, np.newaxis, np.newaxis] + moved)
-        fails += density.sf(gain * upper[:, np.newaxis, np.newaxis] + moved)
-        loss = fails + _apply(integrate, weight * loss)
-        survive = _apply(integrate, weight * survive)
-        if i and modes > 1:
-            expect = bridge.expectation(tap - 1).T
+            step = _Step(band, np.array([-band.half]), np.array([band.half]))
+        elif i in (0, count - 1) and stretch.tied:
+            room = band.dnl if i == count - 1 else np.inf
+            step = _Step(band, *band.limits(x if i else np.zeros(1), room))
+        loss, survive = step.apply(loss, survive, density, gain, moved)
+        if hazard is not None:
+            more = repeats * hazard(moved, gain)
+            kept = np.exp(-more)
+            loss, survive = kept * loss - np.expm1(-more), kept * survive
+        if modes > 1:
+            expect = path.expectation(i).T
             loss, survive = loss @ expect, survive @ expect
-    return loss[0] @ bridge.weights, survive[0] @ bridge.weights
+    return loss[0], survive[0]
 
 
-def _apply(matrix: NDArray, values: NDArray) -> NDArray:
-    flat = matrix @ values.reshape(len(values), -1)
-    return flat.reshape(len(matrix), *values.shape[1:])
+class _Step:
+    """One threshold of the chain: the band integral and the tails outside, for one set of limits."""
+
+    def __init__(self, band: Band, lower: NDArray, upper: NDArray) -> None:
+        self.nodes = band.panels.nodes[:, np.newaxis, np.newaxis]
+        self.integrate = band_matrix(band.panels, lower, upper)
+        # half of the limits are the box itself: work out each tail once
+        self.lower, self.which_lower = np.unique(lower, return_inverse=True)
+        self.upper, self.which_upper = np.unique(upper, return_inverse=True)
+
+    def apply(
+        self,
+        loss: NDArray,
+        survive: NDArray,
+        density: OffsetDensity,
+        gain: NDArray,
+        moved: NDArray,
+    ) -> tuple[NDArray, NDArray]:
+        weight = gain * density.pdf(gain * self.nodes + moved)
+        below = density.cdf(gain * self.lower[:, np.newaxis, np.newaxis] + moved)
+        above = density.sf(gain * self.upper[:, np.newaxis, np.newaxis] + moved)
+        lost = self._band(weight * loss)
+        lost += below[self.which_lower]
+        lost += above[self.which_upper]
+        weight *= survive
+        return lost, self._band(weight)
+
+    def _band(self, values: NDArray) -> NDArray:
+        flat = self.integrate @ values.reshape(len(values), -1)
+        return flat.reshape(-1, *values.shape[1:])

@@ -17,4 +17,5 @@ __all__ = [
     "load_cell",
     "load_plan",
     "plan_from_table",
+    "with_cell",
 ]

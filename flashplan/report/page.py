@@ -20,6 +20,7 @@ from flashplan.report.words import (
     goal_rows,
     headline,
     line_origin,
+    reasons,
     verdict_sentence,
 )
 
@@ -68,7 +69,12 @@ def render_page(results: "Results", sections: Sequence[Section]) -> str:
         .capitalize(),
         missed=False in met,
         unknown=None in met,
-        limits_sentence=verdict_sentence(results.verdict),
+        limits_sentence=" ".join(
+            [
+                verdict_sentence(results.verdict),
+                *reasons(results.array, results.verdict),
+            ]
+        ),
         goals=goal_rows(plan, results.array),
         left_out=results.array.left_out,
         caution=CAUTION,

@@ -1,5 +1,6 @@
 """Terminal tables of each verb's result."""
 
+import numpy as np
 from rich.console import Group, RenderableType
 from rich.padding import Padding
 from rich.table import Table
@@ -11,6 +12,7 @@ from flashplan.budget.result import Budget, BudgetLine
 from flashplan.cell.check import Verdict
 from flashplan.decoder import DecoderTable
 from flashplan.ladder import LadderResult
+from flashplan.measure import MeasureResult
 from flashplan.plan.model import Plan
 from flashplan.quantity import show
 from flashplan.report.words import (
@@ -20,6 +22,7 @@ from flashplan.report.words import (
     line_origin,
     verdict_sentence,
 )
+from flashplan.sweep import SweepResult
 
 _MARK = {True: "met", False: "MISSED", None: "not judged"}
 _STYLE = {True: "green", False: "bold red", None: "yellow"}
@@ -227,6 +230,70 @@ def decoder_table(decoders: DecoderTable) -> RenderableType:
     return Group(
         table,
         Text("errors in LSB against the number of thresholds passed", style="dim"),
+        _caution(),
+    )
+
+
+def measure_table(result: MeasureResult) -> RenderableType:
+    """What the record holds, its figures, and which errors explain it."""
+    facts = _table("quantity", "value")
+    facts.add_row("samples", f"{result.samples}, {result.cycles:.6g} cycles" + ("" if result.coherent else ", not coherent"))
+    facts.add_row("input", f"{show(result.frequency, 'Hz', 6)}, amplitude {result.amplitude_lsb:.4g} LSB")
+    facts.add_row("SNDR", f"{result.sndr_db:.2f} dB")
+    facts.add_row("SFDR", f"{result.sfdr_db:.1f} dB")
+    facts.add_row("ENOB", f"{result.enob:.3f}")
+    facts.add_row("largest |DNL|", f"{np.nanmax(np.abs(result.dnl_lsb)):.3f} LSB ({result.linearity_fit} line)")
+    facts.add_row("largest |INL|", f"{np.nanmax(np.abs(result.inl_lsb)):.3f} LSB ({result.linearity_fit} line)")
+    found = _table("explained by", "value", "95 % interval", "limit", "verdict")
+    for name, finding in result.diagnosis.items():
+        found.add_row(
+            name,
+            show(finding.value, finding.unit, 3),
+            f"{show(finding.low, finding.unit, 3)} to {show(finding.high, finding.unit, 3)}",
+            show(finding.limit, finding.unit, 3),
+            Text("open", style="yellow") if finding.met is None else mark(finding.met),
+        )
+    broken = [name for name, finding in result.diagnosis.items() if finding.met is False]
+    first = f"Broken: {', '.join(broken)}." if broken else "No budget line is shown to be broken."
+    return Group(Text(first, style="bold red" if broken else "green"), facts, found, _caution())
+
+
+def sweep_table(result: SweepResult) -> RenderableType:
+    """One row a point; a goal that is missed is marked."""
+    table = _table(
+        *(axis.key.split(".")[-1] for axis in result.axes),
+        "yield",
+        "ENOB",
+        "word errors",
+        "power",
+        "goals",
+    )
+    for point in result.points:
+        varied = [show(point.vary[axis.key], axis.unit) for axis in result.axes]
+        if point.refused:
+            table.add_row(
+                *varied, "-", "-", "-", "-", Text("impossible", style="yellow")
+            )
+            continue
+        missed = [name for name, met in point.goals_met.items() if met is False]
+        open_ = None in point.goals_met.values()
+        verdict = (
+            Text(f"misses {', '.join(missed)}", style="red")
+            if missed
+            else mark(None if open_ else True)
+        )
+        table.add_row(
+            *varied,
+            _number(point.yield_),
+            _number(point.enob_low),
+            _number(point.word_error_rate),
+            show(point.power, "W"),
+            verdict,
+        )
+    reasons = dict.fromkeys(point.refused for point in result.points if point.refused)
+    return Group(
+        table,
+        *(Text(f"impossible: {reason}", style="yellow") for reason in reasons),
         _caution(),
     )
 

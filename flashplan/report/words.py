@@ -98,6 +98,64 @@ def verdict_sentence(verdict: Verdict) -> str:
     return text
 
 
+# The lines that can break each goal.
+_BEHIND = {
+    "linearity": (
+        "offset_sigma",
+        "resistor_sigma",
+        "kickback_charge",
+        "ladder_resistance",
+    ),
+    "enob": (
+        "offset_sigma",
+        "noise_sigma",
+        "hysteresis",
+        "skew_sigma",
+        "jitter_sigma",
+        "kickback_charge",
+        "ladder_resistance",
+        "resistor_sigma",
+        "input_capacitance",
+    ),
+    "word_error_rate": ("regeneration_tau", "delay"),
+}
+
+
+def reasons(result: ArrayResult, verdict: Verdict) -> list[str]:
+    """Why each missed goal is missed, by the broken limits behind it; or why broken limits did no harm."""
+    found = []
+    for goal, met in result.goals_met.items():
+        if met is not False:
+            continue
+        broken = [
+            verdict.lines[name]
+            for name in _BEHIND[goal]
+            if verdict.lines[name].met is False
+        ]
+        broken.sort(key=lambda line: line.margin or 0.0)
+        in_the_way = ", ".join(f"{line.name} ({_over(line)})" for line in broken)
+        found.append(
+            f"In the way of {_GOAL_WORDS[goal]}: {in_the_way or 'no single limit, but their sum'}."
+        )
+    if (
+        not found
+        and None not in result.goals_met.values()
+        and any(line.met is False for line in verdict.lines.values())
+    ):
+        found.append(
+            "The goals are met all the same: a limit is what is safe while all others are used up,"
+            " and here others leave room."
+        )
+    return found
+
+
+_GOAL_WORDS = {
+    "linearity": "linearity",
+    "enob": "effective bits",
+    "word_error_rate": "the word error rate",
+}
+
+
 def _over(line: VerdictLine) -> str:
     return f"{show(line.value, line.unit)} against {show(line.limit, line.unit)}"
 

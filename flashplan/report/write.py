@@ -1,8 +1,7 @@
 """The report: every room's result in one folder, as page, figures, JSON and CSV."""
 
-import csv
-import io
 from collections.abc import Iterable, Sequence
+from concurrent.futures import Executor
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -14,7 +13,7 @@ from flashplan.cell.check import Verdict, check_cell
 from flashplan.chain import compare_decoders, simulate_array, solve_ladder
 from flashplan.decoder import DecoderTable
 from flashplan.errors import InputError
-from flashplan.files import as_json, write_whole
+from flashplan.files import as_csv, as_json, write_whole
 from flashplan.ladder import LadderResult
 from flashplan.plan.model import Plan
 from flashplan.report.page import page_sections, render_page
@@ -44,11 +43,11 @@ class Results:
 
 
 def gather_results(
-    plan: Plan, workers: int = 1, progress: Progress | None = None
+    plan: Plan, executor: Executor | None = None, progress: Progress | None = None
 ) -> Results:
     """Run every room for a plan and its own cell. Raises InputError."""
     budget = derive_budget(plan)
-    array = simulate_array(plan, workers=workers, progress=progress)
+    array = simulate_array(plan, executor=executor, progress=progress)
     return Results(
         plan=plan,
         budget=budget,
@@ -60,7 +59,10 @@ def gather_results(
 
 
 def write_report(
-    plan: Plan, folder: str | Path, workers: int = 1, progress: Progress | None = None
+    plan: Plan,
+    folder: str | Path,
+    executor: Executor | None = None,
+    progress: Progress | None = None,
 ) -> Written:
     """Write the whole report of a plan into a folder, which is made where it is not there.
 
@@ -68,7 +70,7 @@ def write_report(
     """
     folder = Path(folder)
     _make(folder / "figures")
-    results = gather_results(plan, workers, progress)
+    results = gather_results(plan, executor, progress)
     sections = page_sections(results)
     for section in sections:
         for drawn in section.figures:
@@ -76,7 +78,7 @@ def write_report(
     for name, document in _documents(results).items():
         write_whole(folder / f"{name}.json", as_json(document))
     for name, (columns, rows) in _tables(results).items():
-        write_whole(folder / f"{name}.csv", _csv(columns, rows))
+        write_whole(folder / f"{name}.csv", as_csv(columns, rows))
     page = folder / "index.html"
     write_whole(page, render_page(results, sections))
     return Written(
@@ -156,11 +158,3 @@ def _tables(
             ),
         )
     return tables
-
-
-def _csv(columns: Sequence[str], rows: Iterable[Sequence[Any]]) -> str:
-    buffer = io.StringIO()
-    writer = csv.writer(buffer, lineterminator="\n")
-    writer.writerow(columns)
-    writer.writerows(["" if cell is None else cell for cell in row] for row in rows)
-    return buffer.getvalue()

@@ -17,7 +17,9 @@ def test_half_a_period_of_a_gigahertz_at_70_ps_leaves_one_in_a_thousand_undecide
     assert 1e-3 / 1.5 < once < 1e-3 * 1.5
     twice = undecided_rate(1000e-12, 70e-12, gain=5, level=25e-3, lsb=10e-3)
     assert twice == pytest.approx(6.249e-7, rel=1e-3)
-    assert 1e-6 / 1.5**2 < twice < 1e-6 * 1.5**2  # the square of a figure rounded to within 1.5
+    assert (
+        1e-6 / 1.5**2 < twice < 1e-6 * 1.5**2
+    )  # the square of a figure rounded to within 1.5
 
 
 @pytest.mark.parametrize(
