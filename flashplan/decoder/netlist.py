@@ -23,7 +23,7 @@ class Netlist:
     outputs: nodes of the word's bits, the lowest first.
     """
 
-    graph: nx.DiGraph
+    graph: "nx.DiGraph[str]"
     inputs: tuple[str, ...]
     outputs: tuple[str, ...]
 
@@ -33,7 +33,7 @@ class Builder:
 
     def __init__(self, bits: int) -> None:
         self.inputs = tuple(f"t{k}" for k in range(1, 2**bits))
-        self._graph = nx.DiGraph()
+        self._graph: nx.DiGraph[str] = nx.DiGraph()
         self._graph.add_nodes_from(self.inputs, kind="input", inputs=())
 
     def gate(self, kind: Kind, *inputs: str) -> str:
@@ -60,9 +60,8 @@ class Builder:
 
 def gate_counts(netlist: Netlist) -> Counter[str]:
     """Number of gates of each kind."""
-    return Counter(
-        kind for _, kind in netlist.graph.nodes(data="kind") if kind != "input"
-    )
+    kinds: list[str] = [netlist.graph.nodes[node]["kind"] for node in netlist.graph]
+    return Counter(kind for kind in kinds if kind != "input")
 
 
 def depth(netlist: Netlist) -> int:

@@ -18,9 +18,9 @@ _SCAN = 36
 
 @dataclass(frozen=True)
 class ResistanceLimit:
-    """limit in ohm, None where nothing fits; binding: "linearity" or "enob"; note: why nothing fits."""
+    """limit in ohm, 0 where nothing fits; binding: "linearity" or "enob"; note: why nothing fits."""
 
-    limit: float | None
+    limit: float
     binding: str
     note: str = ""
 
@@ -55,7 +55,7 @@ def largest_resistance(
         best = int(np.argmin(parts))
         name = ("linearity", "enob")[int(np.argmax(used(float(places[best]))))]
         return ResistanceLimit(
-            None,
+            0.0,
             name,
             f"no resistance fits: at {np.exp(places[best]):.3g} ohm still {parts[best]:.3g} times the room",
         )

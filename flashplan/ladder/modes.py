@@ -42,10 +42,12 @@ def network_modes(network: Network, fastest: float = np.inf) -> Modes:
             rate, vectors = eigh_tridiagonal(
                 main, beside, select="v", select_range=(0.0, fastest)
             )
-        return Modes(rate, vectors / root[:, None])
+        return Modes(np.asarray(rate, dtype=float), vectors / root[:, None])
     rate, shape = eigh(conductance.toarray(), capacitance.toarray())
     kept = rate <= fastest
-    return Modes(rate[kept], shape[:, kept])
+    return Modes(
+        np.asarray(rate[kept], dtype=float), np.asarray(shape[:, kept], dtype=float)
+    )
 
 
 def _is_tridiagonal(network: Network) -> bool:

@@ -55,7 +55,7 @@ def build_network(parts: list[Part]) -> Network:
     not positive, two sources on one node, and a node that no resistor ties to a source or to ground.
     Source: nodal analysis; any textbook on networks.
     """
-    graph = nx.MultiGraph()
+    graph: nx.MultiGraph[str] = nx.MultiGraph()
     graph.add_node(GROUND)
     held = {GROUND: 0.0}
     for part in parts:
@@ -117,11 +117,11 @@ def _sparse(entries: list[tuple[int, int, float]], shape: tuple[int, int]) -> cs
     ).tocsc()
 
 
-def _refuse_floating(graph: nx.MultiGraph, held: dict[str, float]) -> None:
-    resistive = nx.Graph()
+def _refuse_floating(graph: "nx.MultiGraph[str]", held: dict[str, float]) -> None:
+    resistive: nx.Graph[str] = nx.Graph()
     resistive.add_nodes_from(graph)
     resistive.add_edges_from(
-        (a, b) for a, b, part in graph.edges(data="part") if part.kind == "resistor"
+        (a, b) for a, b, part in _edges(graph) if part.kind == "resistor"
     )
     tied = {
         node
@@ -132,11 +132,15 @@ def _refuse_floating(graph: nx.MultiGraph, held: dict[str, float]) -> None:
     for node in graph:
         if node not in tied:
             labels = ", ".join(
-                sorted({part.label for _, _, part in graph.edges(node, data="part")})
+                sorted({part.label for a, b, part in _edges(graph) if node in (a, b)})
             )
             raise InputError(
                 f"node {node} floats: no resistor ties it to a source; it hangs on {labels}"
             )
+
+
+def _edges(graph: "nx.MultiGraph[str]") -> list[tuple[str, str, Part]]:
+    return list(graph.edges(data="part"))
 
 
 def dc_voltages(network: Network) -> Floats:

@@ -9,7 +9,7 @@ from rich.text import Text
 from flashplan.array.result import ArrayResult
 from flashplan.budget.explain import Explanation
 from flashplan.budget.result import Budget, BudgetLine
-from flashplan.cell.check import Verdict
+from flashplan.cell.check import Verdict, VerdictLine
 from flashplan.decoder import DecoderTable
 from flashplan.ladder import LadderResult, effects
 from flashplan.measure import MeasureResult
@@ -46,7 +46,7 @@ def budget_table(budget: Budget) -> RenderableType:
             _share(line.share),
             line_origin(line),
         )
-    origins = [Text()]
+    origins: list[RenderableType] = [Text()]
     for line in budget.lines.values():
         origins.append(Text.assemble((line.name, "bold"), " = ", line.formula))
         origins.append(Padding(Text(line.source, style="dim"), (0, 0, 0, 4)))
@@ -104,13 +104,28 @@ def verdict_table(verdict: Verdict) -> RenderableType:
             line.name,
             show(line.limit, line.unit),
             show(line.value, line.unit),
-            show(line.limit - line.value, line.unit, 3) if known else "-",  # type: ignore[operator]
+            show(_difference(line), line.unit, 3) if known else "-",
             f"{line.margin:+.1%}" if line.margin is not None else "-",
             mark(line.met),
         )
+    notes = [
+        Text(f"{line.name}: {line.note}", style="dim")
+        for line in verdict.lines.values()
+        if line.note
+    ]
     return Group(
-        Text(verdict_sentence(verdict), style=_STYLE[verdict.met]), table, _caution()
+        Text(verdict_sentence(verdict), style=_STYLE[verdict.met]),
+        table,
+        *notes,
+        _caution(),
     )
+
+
+def _difference(line: VerdictLine) -> float:
+    """Limit less value; what is only rounding is nothing."""
+    assert line.limit is not None
+    assert line.value is not None
+    return 0.0 if abs(line.margin or 0.0) < 1e-9 else line.limit - line.value
 
 
 def ladder_table(result: LadderResult) -> RenderableType:

@@ -54,7 +54,9 @@ def test_a_tree_of_full_adders_or_multiplexers_has_the_published_size(
 
 def test_the_ones_counter_is_pythons_own_popcount() -> None:
     drawn = np.random.default_rng(0).random((2000, 255)) < 0.5
-    counted = [int("".join(str(int(bit)) for bit in row), 2).bit_count() for row in drawn]
+    counted = [
+        int("".join(str(int(bit)) for bit in row), 2).bit_count() for row in drawn
+    ]
     np.testing.assert_array_equal(
         evaluate(SCHEMES["ones-counter"].build(8), drawn), counted
     )
