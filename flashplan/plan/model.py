@@ -15,6 +15,9 @@ Scheme = Literal[
     "ones-counter",
     "mux-tree",
     "fat-tree",
+    "gray-logic",
+    "folded-adder",
+    "sorted-rom",
 ]
 
 
