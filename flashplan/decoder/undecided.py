@@ -36,6 +36,7 @@ def undecided_errors(
 ) -> UndecidedErrors:
     """Follow each undecided comparator of `words` through the gates.
 
+    The gates that read it give clean levels, whichever they took it for: an undecided level does not pass a gate.
     A word's legal codes are its number of ones with the undecided bit 0 and with it 1. rng draws the readings of
     comparators that more than EXACT_READERS gates read.
     """
@@ -43,32 +44,50 @@ def undecided_errors(
     power = wrong = sparkle = 0.0
     largest = 0
     exact = True
-    for comparator in np.unique(words.undecided_at):
-        here = words.undecided_at == comparator
-        base = words.undecided[here].copy()
-        weight = words.undecided_weight[here]
-        base[:, comparator] = False
-        legal = base.sum(axis=1, dtype=np.int64)
-        columns = np.flatnonzero(origin == comparator)
-        readings, common = _readings(columns.size, rng)
+    readers = np.bincount(origin, minlength=program.inputs)[words.undecided_at]
+    for count in np.unique(readers):
+        readings, common = _readings(int(count), rng)
         exact &= common == 0
+        chosen = np.flatnonzero(readers == count)
         step = max(1, _BLOCK // (readings.shape[0] * origin.size))
-        for start in range(0, base.shape[0], step):
-            part = slice(start, start + step)
-            lanes = np.repeat(base[part][:, origin], readings.shape[0], axis=0)
-            lanes[:, columns] = np.tile(readings, (base[part].shape[0], 1))
-            codes = evaluate(split, lanes).reshape(-1, readings.shape[0])
-            above = codes - legal[part, None]
-            errors = np.minimum(np.abs(above), np.abs(above - 1))
+        for start in range(0, chosen.size, step):
+            part = chosen[start : start + step]
+            errors = _errors(split, origin, readings, words, part)
+            weight = words.undecided_weight[part]
             largest = max(largest, int(errors.max()))
             # The common readings are there for the maximum; they are far rarer than two in so many.
             drawn = errors[:, common:]
-            power += float(weight[part] @ np.mean(drawn**2.0, axis=1))
-            wrong += float(weight[part] @ np.mean(drawn > 0, axis=1))
-            sparkle += float(weight[part] @ np.mean(drawn > 2, axis=1))
+            power += float(weight @ np.mean(drawn**2.0, axis=1))
+            wrong += float(weight @ np.mean(drawn > 0, axis=1))
+            sparkle += float(weight @ np.mean(drawn > 2, axis=1))
     total = float(words.undecided_weight.sum())
     rms = float(np.sqrt(power / total)) if total > 0 else 0.0
     return UndecidedErrors(rms, largest, wrong, sparkle, exact)
+
+
+def _errors(
+    split: Program,
+    origin: NDArray[np.int64],
+    readings: NDArray[np.bool_],
+    words: DecoderWords,
+    part: NDArray[np.int64],
+) -> NDArray[np.int64]:
+    """Errors (words of this part, readings); the undecided comparators of all these words have equally many readers."""
+    base = words.undecided[part].copy()
+    at = words.undecided_at[part]
+    base[np.arange(part.size), at] = False
+    legal = base.sum(axis=1, dtype=np.int64)[:, None]
+    lanes = np.repeat(base[:, None, origin], readings.shape[0], axis=1)
+    first = np.searchsorted(origin, at)
+    columns = first[:, None] + np.arange(readings.shape[1])
+    lanes[
+        np.arange(part.size)[:, None, None],
+        np.arange(readings.shape[0])[:, None],
+        columns[:, None, :],
+    ] = readings
+    codes = evaluate(split, lanes.reshape(-1, origin.size))
+    above = codes.reshape(part.size, -1) - legal
+    return np.minimum(np.abs(above), np.abs(above - 1))
 
 
 def _readings(readers: int, rng: np.random.Generator) -> tuple[NDArray[np.bool_], int]:

@@ -54,7 +54,7 @@ def verilog_bench(
         "    endtask",
         "    initial begin",
     ]
-    for word, code in zip(words, codes, strict=True):
+    for word, code in zip(words.tolist(), codes.tolist(), strict=True):
         value = "".join("01"[bit] for bit in word[::-1])
         lines.append(f"        check({width}'b{value}, {bits}'d{code});")
     lines += [
