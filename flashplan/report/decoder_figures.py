@@ -39,14 +39,24 @@ def ranking_figure(table: DecoderTable) -> Figure:
     smallest = min([value for value in values if value > 0], default=1.0)
     # Linear below the smallest error, so that none at all has a place too.
     right.set_xscale("symlog", linthresh=smallest, linscale=0.5)
+    decades = 10.0 ** np.arange(np.ceil(np.log10(smallest)), 5)
+    marks = [0.0, *decades[decades < 3 * max([*values, smallest])]]
+    right.set_xticks(marks, [f"{mark:g}" for mark in marks])
+    right.minorticks_off()
     for label, key, colour, marker in kinds:
         errors = [getattr(scheme, key) for scheme in schemes]
         right.plot(errors, place, marker, color=colour, label=label, clip_on=False)
     right.set_xlim(0, 3 * max([*values, smallest]))
     right.set_xlabel("rms error in LSB")
-    right.legend(loc="lower center", bbox_to_anchor=(0.5, 1.0), ncols=2, fontsize=7.5)
+    right.legend(
+        loc="lower center",
+        bbox_to_anchor=(0.5, 1.0),
+        ncols=2,
+        fontsize=7.5,
+        frameon=False,
+    )
     for axes in (left, right):
-        axes.grid(axis="y", visible=False)
+        axes.tick_params(labelsize=8)
         axes.spines[["top", "right"]].set_visible(False)
         axes.set_ylim(-0.6, len(schemes) - 0.4)
     return figure
@@ -82,7 +92,9 @@ def fault_map_figure(maps: FaultMaps) -> Figure:
                 )
         axes.set_title(name, fontsize=8.5, loc="left")
         axes.grid(visible=False)
-        axes.set_yticks(range(len(maps.orders)), [str(order) for order in maps.orders])
+        axes.set_yticks(
+            range(len(maps.orders)), [str(order) for order in maps.orders], fontsize=7
+        )
         axes.set_xticks(ticks, [str(d) for d in maps.distances], fontsize=6)
     for axes in list(panels.flat)[len(names) :]:
         axes.set_visible(False)
