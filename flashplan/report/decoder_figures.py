@@ -100,7 +100,9 @@ def fault_map_figure(maps: FaultMaps) -> Figure:
         axes.set_visible(False)
     scale = figure.colorbar(image, ax=panels, shrink=0.6)
     marks = [m for m in (0, 1, 3, 7, 15, 31, 63, 127, 255, 1023, 4095) if m <= top]
-    scale.set_ticks([np.log2(1 + mark) for mark in marks], labels=map(str, marks))
+    scale.set_ticks(
+        [np.log2(1 + mark) for mark in marks], labels=[str(mark) for mark in marks]
+    )
     scale.set_label("largest error in LSB")
     figure.supxlabel("distance of the bubble from the edge, in decisions", fontsize=9)
     figure.supylabel("order of the bubble", fontsize=9)

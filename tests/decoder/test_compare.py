@@ -72,12 +72,11 @@ def test_no_conversions_at_all_are_no_error():
     assert all(scheme.wrong_word_rate == 0 for scheme in table.schemes)
 
 
-def test_two_readers_of_an_undecided_comparator_by_hand():
-    # Top decision of 3 on 110 undecided: in a rom it is line 3 itself and the inverter of line 2. Readings (line 3,
-    # inverter): 00 -> 2, 11 -> 3, line 3 alone -> 2 OR 3 = 3, inverter alone -> no line at all, 0, two from 2.
+def test_three_readers_of_an_undecided_comparator_by_hand():
     words = words_of(2, undecided=[[1, 1, 0]], at=[2], weight=[1e-6])
     rom = by_name(compare_schemes(plan_of(2), words))["rom"]
-    # Line 3 is a wire, so both bits of the memory read the comparator: eight readings (bit 0, bit 1, inverter).
+    # The top decision of 110. Line 3 is that decision itself, read by both bits of the memory; the inverter that ends
+    # line 2 is the third reader: eight readings.
     # Bit 0 = x, bit 1 = y OR line 2: line 2 is on while the inverter sees 0.
     codes = [x + 2 * (y | (1 - z)) for x in (0, 1) for y in (0, 1) for z in (0, 1)]
     errors = [min(abs(code - 2), abs(code - 3)) for code in codes]

@@ -17,7 +17,7 @@ def word(text):
     return np.array([[bit == "1" for bit in text]])
 
 
-# Worked by hand from the definitions of the circuits (1-of-n detectors into a wired-OR memory, Gray memory, multiplexer
+# Computed apart from this package from the definitions of the circuits (1-of-n detectors into a wired-OR memory, Gray memory, multiplexer
 # tree), no paper: the decoders' textbook weaknesses.
 PATTERNS = {
     "111111111111100": (13, 13, 13, 13, 13),
@@ -29,15 +29,15 @@ NAMES = ("ones-counter", "rom", "rom-3and", "gray-rom", "mux-tree")
 
 
 @pytest.mark.parametrize("text", PATTERNS)
-def test_bubble_patterns_give_the_words_worked_by_hand(text):
+def test_bubble_patterns_give_the_words_computed_apart(text):
     assert tuple(int(decode(name, word(text))[0]) for name in NAMES) == PATTERNS[text]
 
 
-# Majority of three and then the number of ones, the same hand-worked patterns.
+# Majority of three and then the number of ones, the same patterns.
 @pytest.mark.parametrize(
     ("text", "code"), list(zip(PATTERNS, (13, 13, 12, 13), strict=True))
 )
-def test_majority_then_ones_of_the_hand_worked_patterns(text, code):
+def test_majority_then_ones_of_the_same_patterns(text, code):
     bits = np.array([1, *word(text)[0], 0])
     voted = bits[:-2] + bits[1:-1] + bits[2:] >= 2
     assert voted.sum() == code
