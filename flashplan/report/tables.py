@@ -10,7 +10,8 @@ from flashplan.array.result import ArrayResult
 from flashplan.budget.explain import Explanation
 from flashplan.budget.result import Budget, BudgetLine
 from flashplan.cell.check import Verdict, VerdictLine
-from flashplan.decoder import DecoderTable
+from flashplan.decoder import DecoderTable, rank
+from flashplan.decoder.compare import Order
 from flashplan.ladder import LadderResult, effects
 from flashplan.measure import MeasureResult
 from flashplan.plan.model import Plan
@@ -220,32 +221,42 @@ def array_table(plan: Plan, result: ArrayResult) -> RenderableType:
     return Group(*notes, goals, facts, _caution())
 
 
-def decoder_table(decoders: DecoderTable) -> RenderableType:
-    """All schemes on the same words."""
+def decoder_table(decoders: DecoderTable, order: Order) -> RenderableType:
+    """All schemes on the same words, best first by the chosen order, and which one to take."""
     table = _table(
         "scheme",
-        "gates",
+        "transistors",
         "depth",
-        "rms error",
+        "rms",
         "max",
-        "wrong words",
+        "wrong",
         "undecided rms",
         "max",
+        "toggles",
+        "verdict",
     )
-    for row in decoders.to_dict()["schemes"]:
+    for row in rank(decoders.schemes, order):
         table.add_row(
-            row["name"],
-            str(row["gates"]),
-            str(row["depth"]),
-            _number(row["rms_error_lsb"]),
-            _number(row["max_error_lsb"]),
-            _number(row["wrong_word_rate"]),
-            _number(row["undecided_rms_error_lsb"]),
-            _number(row["undecided_max_error_lsb"]),
+            row.name,
+            str(row.transistors),
+            str(row.depth),
+            _number(row.rms_error_lsb),
+            str(row.max_error_lsb),
+            _number(row.wrong_word_rate),
+            _number(row.undecided_rms_error_lsb),
+            ("" if row.undecided_exact else ">=") + str(row.undecided_max_error_lsb),
+            _number(row.transitions),
+            Text("good enough", style="green")
+            if row.good_enough
+            else Text("costs more", style="yellow"),
         )
     return Group(
+        Text(decoders.sentence, style="bold"),
         table,
-        Text("errors in LSB against the number of thresholds passed", style="dim"),
+        Text(
+            "errors in LSB against the number of thresholds passed; toggles: gate outputs that change per word",
+            style="dim",
+        ),
         _caution(),
     )
 
