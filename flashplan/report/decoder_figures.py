@@ -49,11 +49,11 @@ def ranking_figure(table: DecoderTable) -> Figure:
     right.set_xlim(0, 3 * max([*values, smallest]))
     right.set_xlabel("rms error in LSB")
     right.legend(
+        frameon=False,
         loc="lower center",
         bbox_to_anchor=(0.5, 1.0),
         ncols=2,
         fontsize=7.5,
-        frameon=False,
     )
     for axes in (left, right):
         axes.tick_params(labelsize=8)

@@ -27,7 +27,6 @@ _STYLE: Any = {
     "grid.color": "#e4e7eb",
     "grid.linewidth": 0.7,
     "axes.axisbelow": True,
-    "legend.frameon": False,
     "svg.fonttype": "path",
     "svg.hashsalt": "flashplan",
 }

@@ -124,7 +124,7 @@ def _budget(results: "Results") -> Section:
         )
     return Section(
         "What limits, and by how much",
-        verdict_sentence(results.verdict),
+        "",
         [
             _drawn(
                 "margins",
@@ -224,9 +224,9 @@ def _decoders(results: "Results") -> Section:
             str(scheme.depth),
             f"{scheme.rms_error_lsb:.3g}",
             str(scheme.max_error_lsb),
-            f"{scheme.wrong_word_rate:.3g}",
+            f"{scheme.wrong_word_rate:.2g}",
             f"{scheme.undecided_rms_error_lsb:.3g}",
-            ("" if scheme.undecided_exact else "at least ")
+            ("" if scheme.undecided_exact else ">= ")
             + str(scheme.undecided_max_error_lsb),
             "good enough" if scheme.good_enough else "costs more",
         )
@@ -257,8 +257,8 @@ def _decoders(results: "Results") -> Section:
             "max error",
             "wrong words",
             "undecided rms",
-            "undecided max",
-            "",
+            "max",
+            "verdict",
         ),
         rows,
     )
