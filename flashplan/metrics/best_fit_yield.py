@@ -20,6 +20,7 @@ from flashplan.metrics.gaussian_path import (
     line_vectors,
     string_covariance_times,
 )
+from flashplan.metrics.levelled_string import long_range_loss
 from flashplan.metrics.offset_density import NormalOffsets, OffsetDensity
 
 Array = NDArray[np.float64]
@@ -69,8 +70,12 @@ def best_fit_yield(
         levelled_path,
     )
     weights = np.outer(chances, shares).ravel()
-    loss, survive = -np.expm1(-hazards), np.exp(-hazards)
-    return float((weights @ loss).real), float((weights @ survive).real)
+    loss = float((weights @ -np.expm1(-hazards)).real)
+    survive = float((weights @ np.exp(-hazards)).real)
+    if resistor_sigma > 0:
+        more = long_range_loss(density, dnl, inl, resistor_sigma, left, 1.0 + tilt)
+        loss, survive = loss + more, survive - more
+    return loss, survive
 
 
 def _movements(
