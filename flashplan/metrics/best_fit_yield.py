@@ -87,7 +87,9 @@ def _movements(
     the complex conjugate.
     """
     strength = min(goal / density.sigma, 7.0) * np.abs(vectors).max(axis=0)
-    rules = [hermite_rule(int(np.ceil(2 + 4 * s + s**2)) + 2 * refine) for s in strength]
+    rules = [
+        hermite_rule(int(np.ceil(2 + 4 * s + s**2)) + 2 * refine) for s in strength
+    ]
     z0, z1 = (v.ravel() for v in np.meshgrid(rules[0][0], rules[1][0], indexing="ij"))
     weight = np.outer(rules[0][1], rules[1][1]).ravel()
     z0, z1 = np.round(z0, 12), np.round(z1, 12)
@@ -98,7 +100,7 @@ def _movements(
         on_axis = (z0 == 0) & (z1 != 0)
         weight = weight * np.where(on_axis & (z1 > 0), 2.0, np.where(on_axis, 0.0, 1.0))
     keep = weight > 1e-11
-    return np.array([z0[keep], z1[keep]]), weight[keep]
+    return np.array([z0[keep], z1[keep]]), weight[keep] / weight[keep].sum()
 
 
 def _two_bits(

@@ -94,4 +94,5 @@ def code_percentiles(
     errors (arrays, M) in LSB; percent (percents,) from 0 to 100; results in LSB of the line `fit`.
     """
     dnl, inl = dnl_inl(errors, fit)
-    return np.percentile(dnl, percent, axis=0), np.percentile(inl, percent, axis=0)
+    at = np.asarray(percent, dtype=np.float64)
+    return np.percentile(dnl, at, axis=0), np.percentile(inl, at, axis=0)

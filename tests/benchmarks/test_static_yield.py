@@ -3,6 +3,7 @@
 import math
 import time
 from collections.abc import Callable
+from functools import partial
 
 import numpy as np
 import pytest
@@ -75,7 +76,7 @@ def test_largest_offset_is_nearly_as_quick_at_twelve_bits_as_at_six(
         return largest_offset_sigma(bits, 0.99, 0.5, 0.5, fit, sigma)
 
     benchmark(solve, 6)
-    times = {bits: shortest(lambda: solve(bits), 2) for bits in (4, 6, 8, 10, 12)}
+    times = {bits: shortest(partial(solve, bits), 2) for bits in (4, 6, 8, 10, 12)}
     for bits, seconds in times.items():
         benchmark.extra_info[f"{bits} bits, ms"] = round(seconds * 1e3, 1)
     assert times[12] < 6 * times[6]
