@@ -41,7 +41,9 @@ def best_fit_yield(
     chain with the same deviation of each threshold and the same correlation of neighbours.
     """
     if not isinstance(density, NormalOffsets):
-        raise ValueError("the yield with the best-fit line needs normal offsets")
+        raise ValueError(  # noqa: TRY004 (a wrong choice, not a wrong type)
+            "the yield with the best-fit line needs normal offsets"
+        )
     vectors = line_vectors(2**bits - 1)
     moved = string_covariance_times(vectors, resistor_sigma)
     slope = vectors[:, 1]

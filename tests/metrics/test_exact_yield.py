@@ -170,11 +170,11 @@ def test_trimmed_offsets_are_a_density() -> None:
 
 @pytest.mark.parametrize("fit", FITS)
 def test_without_offsets_the_string_alone_decides(fit: str) -> None:
-    found = linearity_yield(6, 0.0, 0.5, 0.5, fit, 0.07)
-    errors = draw_threshold_errors(np.random.default_rng(3), 100_000, 6, 0.0, 0.07)
-    drawn = judge_arrays(errors, fit, 0.5, 0.5).passed.mean()
+    found = linearity_yield(4, 0.0, 0.6, 0.4, fit, 0.12)
+    errors = draw_threshold_errors(np.random.default_rng(3), 100_000, 4, 0.0, 0.12)
+    drawn = judge_arrays(errors, fit, 0.6, 0.4).passed.mean()
     assert abs(found.yield_ - drawn) < 4e-3
-    little = linearity_yield(6, 0.002, 0.5, 0.5, fit, 0.07)
+    little = linearity_yield(4, 0.002, 0.6, 0.4, fit, 0.12)
     assert abs(found.yield_ - little.yield_) < 2e-3
 
 

@@ -30,12 +30,12 @@ def test_the_limit_of_a_small_yield(goal: float) -> None:
 
 @pytest.mark.parametrize("fit", FITS)
 def test_resistors_and_systematic_errors_cost_offset(fit: str) -> None:
-    bow = 0.1 * np.sin(np.linspace(0, np.pi, 63))
-    free = largest_offset_sigma(6, 0.99, 0.5, 0.4, fit)
-    resistors = largest_offset_sigma(6, 0.99, 0.5, 0.4, fit, 0.02)
-    both = largest_offset_sigma(6, 0.99, 0.5, 0.4, fit, 0.02, bow)
+    bow = 0.1 * np.sin(np.linspace(0, np.pi, 15))
+    free = largest_offset_sigma(4, 0.99, 0.5, 0.45, fit)
+    resistors = largest_offset_sigma(4, 0.99, 0.5, 0.45, fit, 0.03)
+    both = largest_offset_sigma(4, 0.99, 0.5, 0.45, fit, 0.03, bow)
     assert both < resistors < free
-    loss = linearity_yield(6, both, 0.5, 0.4, fit, 0.02, bow).loss
+    loss = linearity_yield(4, both, 0.5, 0.45, fit, 0.03, bow).loss
     assert math.isclose(loss, 0.01, rel_tol=1e-6)
 
 
@@ -55,11 +55,11 @@ def test_no_offset_rescues_a_bow_beyond_the_goal() -> None:
 
 @pytest.mark.parametrize("fit", FITS)
 def test_a_common_scale_shares_the_yield(fit: str) -> None:
-    scale = largest_mismatch_scale(6, 0.99, 0.5, 0.5, fit, 0.2, 0.01)
-    loss = linearity_yield(6, 0.2 * scale, 0.5, 0.5, fit, 0.01 * scale).loss
+    scale = largest_mismatch_scale(5, 0.99, 0.5, 0.5, fit, 0.2, 0.01)
+    loss = linearity_yield(5, 0.2 * scale, 0.5, 0.5, fit, 0.01 * scale).loss
     assert math.isclose(loss, 0.01, rel_tol=1e-6)
-    alone = largest_offset_sigma(6, 0.99, 0.5, 0.5, fit)
-    without = largest_mismatch_scale(6, 0.99, 0.5, 0.5, fit, 0.2, 0.0)
+    alone = largest_offset_sigma(5, 0.99, 0.5, 0.5, fit)
+    without = largest_mismatch_scale(5, 0.99, 0.5, 0.5, fit, 0.2, 0.0)
     assert math.isclose(0.2 * without, alone, rel_tol=1e-7)
     assert scale < without
 
