@@ -3,7 +3,7 @@
 import math
 import re
 
-from quantiphy import Quantity, QuantiPhyError
+from quantiphy import QuantiPhyError, Quantity
 
 # What people may write for a unit, beside the unit itself.
 ACCEPTED_UNITS: dict[str, tuple[str, ...]] = {
@@ -38,12 +38,12 @@ def parse_quantity(value: object, unit: str) -> float:
     (2500000000.0, 60.0, 2.5e-11)
     """
     if isinstance(value, bool) or not isinstance(value, (int, float, str)):
-        raise ValueError(f"expected {_example(unit)}, found {value!r}")
+        raise ValueError(f"expected {_example(unit)}, found {value!r}")  # noqa: TRY004 the file's reader wants this one
     if isinstance(value, str):
         number, found = _split(value, unit)
         accepted = ACCEPTED_UNITS.get(unit, (unit,))
         if found not in accepted and found != "":
-            raise ValueError(f"unit {found!r} in {value!r} is not {_example(unit)}")
+            raise ValueError(f"expected {_example(unit)}, found {value!r}")
     else:
         number = float(value)
     if not math.isfinite(number):
@@ -84,6 +84,8 @@ def show(value: float | None, unit: str = "", digits: int = 4) -> str:
         return "-"
     if unit in ("ratio", ""):
         return f"{value:.{digits}g}"
+    if "^" in unit:  # a prefix in front of a power would be misread
+        return f"{value:.{digits}g} {unit}"
     if unit == "lsb":
         return f"{value:.{digits}g} LSB"
     if unit == "db":

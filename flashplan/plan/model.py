@@ -15,6 +15,9 @@ Scheme = Literal[
     "ones-counter",
     "mux-tree",
     "fat-tree",
+    "gray-logic",
+    "folded-adder",
+    "sorted-rom",
 ]
 
 
@@ -77,7 +80,7 @@ class Allocation(Table):
 class Ladder(Table):
     """The reference ladder that the comparators hang on."""
 
-    total_resistance: Annotated[float, Unit("ohm", gt=0)] | Literal["auto"] = "auto"
+    total_resistance: Literal["auto"] | Annotated[float, Unit("ohm", gt=0)] = "auto"
     resistor_sigma: Annotated[float, Unit("ratio", ge=0, lt=0.3)] = 0.0
     tap_capacitance: Annotated[float, Unit("F", gt=0)] = 10e-15
     end_resistance: Annotated[float, Unit("ohm", ge=0)] = 0.0
