@@ -2,6 +2,7 @@
 
 import sys
 from collections.abc import Callable
+from enum import StrEnum
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
@@ -19,6 +20,15 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
     help="Plan the comparator array of a flash A/D converter. A planning estimate, not a sign-off.",
 )
+
+
+class Rank(StrEnum):
+    """What decoder schemes may be sorted by."""
+
+    error = "error"
+    energy = "energy"
+    depth = "depth"
+
 
 PlanFile = Annotated[
     Path, typer.Argument(metavar="PLAN", help="plan file (TOML)", show_default=False)
@@ -127,7 +137,21 @@ def array(
 
 @app.command()
 def decoders(
-    plan: PlanFile, json: AsJson = False, out: OutFile = None, workers: Workers = 1
+    plan: PlanFile,
+    json: AsJson = False,
+    out: OutFile = None,
+    workers: Workers = 1,
+    rank: Annotated[
+        Rank, typer.Option("--rank", help="what the table is sorted by")
+    ] = Rank.error,
+    verilog: Annotated[
+        Path | None,
+        typer.Option(
+            "--verilog",
+            metavar="FOLDER",
+            help="write the plan's scheme and a self-checking bench",
+        ),
+    ] = None,
 ) -> None:
     """Compare all decoder schemes on the same array."""
     import flashplan as fp
@@ -136,7 +160,11 @@ def decoders(
     loaded = fp.load_plan(plan)
     with _progress() as progress, _executor(workers) as executor:
         table = fp.compare_decoders(loaded, executor=executor, progress=progress)
-    _emit(table.to_dict(), lambda: decoder_table(table), json, out)
+    if verilog is not None:
+        from flashplan.report.verilog_files import write_verilog
+
+        write_verilog(loaded, verilog)
+    _emit(table.to_dict(), lambda: decoder_table(table, rank.value), json, out)
 
 
 @app.command()
@@ -181,7 +209,7 @@ def sweep(
     if figure is not None and len(axes) > 2:
         raise InputError(f"a figure takes one or two axes, not {len(axes)}", "--figure")
     with _progress() as progress, _executor(workers, cluster) as executor:
-        result = fp.sweep(
+        result = fp.run_sweep(
             loaded, axes, store=store, executor=executor, progress=progress
         )
     if csv is not None:
@@ -213,7 +241,7 @@ def measure(
     import flashplan as fp
     from flashplan.report.tables import measure_table
 
-    result = fp.measure(codes, fp.load_plan(plan))
+    result = fp.measure_codes(codes, fp.load_plan(plan))
     _emit(result.to_dict(), lambda: measure_table(result), json, out)
 
 

@@ -11,3 +11,7 @@ class InputError(ValueError):
         self.message = message
         self.where = where
         super().__init__(f"{where}: {message}" if where else message)
+
+    def __reduce__(self) -> tuple[type["InputError"], tuple[str, str]]:
+        # Its parts, so that it comes back whole from a worker process.
+        return InputError, (self.message, self.where)

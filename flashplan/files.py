@@ -34,6 +34,16 @@ def write_whole(path: str | Path, content: str | bytes) -> None:
             os.unlink(temporary)
 
 
+def make_folder(folder: str | Path) -> None:
+    """Make a folder, and those above it, where it is not there. Raises InputError."""
+    try:
+        Path(folder).mkdir(parents=True, exist_ok=True)
+    except OSError as error:
+        raise InputError(
+            f"cannot make the folder: {error.strerror or error}", str(folder)
+        ) from None
+
+
 def as_json(document: dict[str, Any]) -> str:
     """One JSON document as text; a number that is not finite is an error of ours, not JSON."""
     return json.dumps(document, indent=2, allow_nan=False, ensure_ascii=False) + "\n"

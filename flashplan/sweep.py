@@ -86,7 +86,7 @@ class _Point:
         }
 
 
-def sweep(
+def run_sweep(
     plan: Plan,
     axes: Sequence[Axis],
     store: str | Path | None = None,
@@ -106,7 +106,8 @@ def sweep(
         raise InputError("is varied twice", f"--vary {min(repeated)}")
     count = int(np.prod([len(axis.values) for axis in axes]))
     found = run_study(
-        _Point(plan, axes),
+        # A plan read by another path is the same study.
+        _Point(plan.model_copy(update={"source": Path(plan.source).name}), axes),
         count,
         seed=plan.array.seed,
         store=store,

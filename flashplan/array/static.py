@@ -12,6 +12,7 @@ from flashplan.metrics.linearity import dnl_inl
 from flashplan.metrics.static_run import draw_threshold_errors, judge_arrays
 from flashplan.plan.datasheet import Datasheet
 from flashplan.plan.model import Plan
+from flashplan.study.threads import one_thread
 
 # Thresholds drawn at once: a few megabytes, small enough for the cache and large enough for numpy.
 _CHUNK_THRESHOLDS = 2**18
@@ -69,15 +70,16 @@ def gather(
     """Put the chunks together and work out the exact yield."""
     goals = plan.goals
     passed = int(sum(trial["passed"].sum() for trial in trials))
-    exact = linearity_yield(
-        plan.converter.bits,
-        (cell.offset_sigma or 0.0) / plan.lsb,
-        goals.dnl_lsb,
-        goals.inl_lsb,
-        goals.linearity_fit,
-        plan.ladder.resistor_sigma,
-        systematic_lsb,
-    )
+    with one_thread():
+        exact = linearity_yield(
+            plan.converter.bits,
+            (cell.offset_sigma or 0.0) / plan.lsb,
+            goals.dnl_lsb,
+            goals.inl_lsb,
+            goals.linearity_fit,
+            plan.ladder.resistor_sigma,
+            systematic_lsb,
+        )
     return StaticResult(
         arrays=plan.array.arrays,
         passed=passed,

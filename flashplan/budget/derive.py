@@ -11,6 +11,7 @@ from flashplan.budget.shares import hysteresis_line, jitter_line, noise_line, sk
 from flashplan.budget.source import input_capacitance_line
 from flashplan.errors import InputError
 from flashplan.plan.model import Plan
+from flashplan.study.threads import one_thread
 
 LINES: dict[str, Callable[[Plan, ErrorRoom], BudgetLine]] = {
     "offset_sigma": offset_line,
@@ -32,14 +33,16 @@ def derive_budget(plan: Plan) -> Budget:
 
     Raises InputError when the plan's goals cannot be met by any cell.
     """
-    room = error_room(plan)
+    with one_thread():
+        room = error_room(plan)
+        lines = {name: build(plan, room) for name, build in LINES.items()}
     return Budget(
         plan=plan,
         lsb=plan.lsb,
         comparators=plan.comparators,
         ideal_error_lsb2=room.ideal,
         allowed_error_lsb2=room.allowed,
-        lines={name: build(plan, room) for name, build in LINES.items()},
+        lines=lines,
     )
 
 
@@ -49,4 +52,5 @@ def derive_line(plan: Plan, name: str) -> BudgetLine:
         raise InputError(
             f"there is no budget line {name!r}; the lines are {', '.join(LINES)}"
         )
-    return LINES[name](plan, error_room(plan))
+    with one_thread():
+        return LINES[name](plan, error_room(plan))

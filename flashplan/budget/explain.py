@@ -43,10 +43,10 @@ class Explanation:
 
 
 def explain_line(plan: Plan, name: str) -> Explanation:
-    """Explain one line, with derivatives by central differences over one percent of each key.
+    """Explain one line, with derivatives by differences over one percent of each key on either side.
 
     Keys that count things (bits, latch stages) or name things have no derivative and are left out, and so is a key
-    whose neighbouring values no plan can have. Raises InputError for a name that is not a line.
+    neither of whose neighbouring values a plan can have. Raises InputError for a name that is not a line.
     """
     line = derive_line(plan, name)
     found = []
@@ -59,17 +59,28 @@ def explain_line(plan: Plan, name: str) -> Explanation:
         ):
             continue
         step = abs(given.value) * _STEP
-        try:
-            low = derive_line(changed_plan(plan, {key: given.value - step}), name).limit
-            high = derive_line(
-                changed_plan(plan, {key: given.value + step}), name
-            ).limit
-        except InputError:
+        around = [
+            (value, limit)
+            for value, limit in (
+                (given.value - step, _limit(plan, name, key, given.value - step)),
+                (given.value, line.limit),
+                (given.value + step, _limit(plan, name, key, given.value + step)),
+            )
+            if limit is not None
+        ]
+        if len(around) < 2:
             continue
-        if low is None or high is None:
-            continue
-        derivative = (high - low) / (2 * step)
+        (low, low_limit), (high, high_limit) = around[0], around[-1]
+        derivative = (high_limit - low_limit) / (high - low)
         elasticity = derivative * given.value / line.limit if line.limit else 0.0
         found.append(Sensitivity(key, derivative, elasticity))
     found.sort(key=lambda s: -abs(s.elasticity))
     return Explanation(line, tuple(found))
+
+
+def _limit(plan: Plan, name: str, key: str, value: float) -> float | None:
+    """The limit with one key changed, None where no plan can have that value."""
+    try:
+        return derive_line(changed_plan(plan, {key: value}), name).limit
+    except InputError:
+        return None

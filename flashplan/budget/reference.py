@@ -15,7 +15,7 @@ from flashplan.ladder import (
     systematic_errors,
     tap_error_power,
 )
-from flashplan.metrics.linearity import dnl_inl
+from flashplan.metrics.linearity import Fit, dnl_inl
 from flashplan.plan.load import changed_plan
 from flashplan.plan.model import Plan
 
@@ -35,7 +35,7 @@ def resolved(plan: Plan) -> Plan:
     if plan.ladder.total_resistance != "auto":
         return plan
     line = ladder_line(plan, error_room(plan))
-    if line.limit is None:
+    if not line.limit:
         raise InputError(
             f'"auto" cannot be worked out: {line.note}',
             f"{plan.source}: ladder.total_resistance",
@@ -66,7 +66,7 @@ def ladder_line(plan: Plan, room: ErrorRoom) -> BudgetLine:
         found = largest_resistance(
             plan, cell, allocation.systematic_lsb, moving_room(plan, room)
         )
-        limit, binding, note = float(found.limit), found.binding, ""
+        limit, binding, note = found.limit, found.binding, found.note
     return BudgetLine(
         "ladder_resistance",
         limit,
@@ -118,8 +118,13 @@ def kickback_line(plan: Plan, room: ErrorRoom) -> BudgetLine:
             # Beyond this a single decision would move its own tap by the whole range, which no linear network describes.
             "linear model": plan.converter.full_scale * plan.ladder.tap_capacitance,
         }
+        candidates = {
+            name: limit for name, limit in candidates.items() if math.isfinite(limit)
+        }
         binding = min(candidates, key=lambda name: candidates[name])
         limit = candidates[binding]
+        if limit == 0:
+            note = "lead, bias, feedthrough and noise alone use up the room of the ladder"
         inputs["total resistance used"] = Input(quiet.total_resistance, "ohm")
     return BudgetLine(
         "kickback_charge",
@@ -137,7 +142,7 @@ def kickback_line(plan: Plan, room: ErrorRoom) -> BudgetLine:
 
 
 def _largest_systematic_charge(
-    fixed: np.ndarray, per_charge: np.ndarray, fit: str, room: float
+    fixed: np.ndarray, per_charge: np.ndarray, fit: Fit, room: float
 ) -> float:
     """Largest charge whose kickback on top of the fixed errors stays inside the room, in C; 0 if nothing is left."""
 

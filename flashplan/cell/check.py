@@ -12,6 +12,10 @@ from flashplan.plan.model import Plan
 # Limits are closed forms or root searches; a value exactly on its limit meets it.
 TOLERANCE = 1e-6
 
+# What a ladder resistance of "auto" uses up by itself: no margin there says nothing of the cell.
+_SET_BY_AUTO = ("ladder_resistance", "kickback_charge")
+TAKEN = 'used up by total_resistance = "auto"'
+
 # Keys of a cell that shift the limits of other keys instead of being judged themselves.
 _SHAPING = ("regeneration_gain", "coupling_capacitance")
 
@@ -64,8 +68,9 @@ def check_cell(cell: Datasheet, budget: Budget) -> Verdict:
     those that the budget was derived with, the limits that hang on them are derived anew.
     """
     budget = _budget_for(cell, budget)
+    auto = budget.plan.ladder.total_resistance == "auto"
     lines = {
-        name: _judged(line, _value(name, cell, budget.plan))
+        name: _judged(line, _value(name, cell, budget.plan), auto)
         for name, line in budget.lines.items()
     }
     met = all(line.met for line in lines.values() if line.limit is not None)
@@ -95,11 +100,11 @@ def _value(name: str, cell: Datasheet, plan: Plan) -> float | None:
     return value
 
 
-def _judged(line: BudgetLine, value: float | None) -> VerdictLine:
+def _judged(line: BudgetLine, value: float | None, auto: bool) -> VerdictLine:
     if line.limit is None:
         return VerdictLine(line.name, None, value, line.unit, None, None, line.note)
     if value is None and line.name == "ladder_resistance":
-        value = line.limit  # "auto" takes the limit itself
+        value = line.limit
     if value is None:
         return VerdictLine(
             line.name,
@@ -115,11 +120,14 @@ def _judged(line: BudgetLine, value: float | None) -> VerdictLine:
         if line.limit
         else (0.0 if value == 0 else -1.0)
     )
+    met = value <= line.limit * (1 + TOLERANCE)
+    taken = auto and line.name in _SET_BY_AUTO and abs(margin) <= TOLERANCE
     return VerdictLine(
         line.name,
         line.limit,
         value,
         line.unit,
         margin,
-        value <= line.limit * (1 + TOLERANCE),
+        met,
+        TAKEN if taken else line.note,
     )

@@ -1,169 +1,131 @@
-"""A decoder as a directed graph of simple gates, evaluated for 64 words at once."""
+"""A decoder as a directed graph of simple gates: how it is built, and what can be read off the graph."""
 
 from collections import Counter
+from collections.abc import Sequence
 from dataclasses import dataclass
-from functools import reduce
-from typing import Literal
 
 import networkx as nx
-import numpy as np
-from numpy.typing import NDArray
 
-Kind = Literal["and", "and-not", "or", "wired-or", "xor", "majority", "mux"]
-Lanes = NDArray[np.uint64]
-
-# Transistors of a static CMOS gate with two inputs, three for majority, mux and the three-input ones; common practice.
-_TRANSISTORS = {"and": 6, "and-not": 8, "or": 6, "xor": 10, "majority": 12, "mux": 12}
+# Static CMOS transistors of a gate with k inputs: NAND and NOR plus an inverter for AND and OR, the 28-transistor mirror
+# adder split into its two outputs, transmission gates for MUX and XOR; a wired OR is one pull-down per input, a pull-up and
+# the inverter that makes OR of it. Common practice, no source.
+_TRANSISTORS = {
+    "not": (2, 0),
+    "and": (2, 2),
+    "or": (2, 2),
+    "xor": (2, 4),
+    "mux": (6, 0),
+    "sum": (16, 0),
+    "carry": (12, 0),
+    "wired-or": (3, 1),
+}
 
 
 @dataclass(frozen=True)
 class Netlist:
-    """graph: nodes are inputs ("t1" ..) and gates, with `kind` and ordered `inputs`; edges run from driver to reader.
+    """A decoder's gates.
 
-    outputs: nodes of the word's bits, the lowest first.
+    graph: nodes are net names, each after the nets that its gate reads; node data `kind` is "input" or a gate kind and
+    `inputs` the driving nets in the order that the gate takes them (mux: select, when 0, when 1).
+    inputs: nets t1 .. tM, lowest threshold first. outputs: nets of word bits 0 .. bits - 1.
     """
 
+    name: str
     graph: nx.DiGraph
     inputs: tuple[str, ...]
     outputs: tuple[str, ...]
 
 
 class Builder:
-    """Puts gates on a graph; hands out their names."""
+    """Collects gates into a netlist; every method takes nets and returns the new gate's net.
+
+    >>> b = Builder(2)
+    >>> net = b.gate("and", b.t(1), b.gate("not", b.t(2)))
+    >>> gate_counts(b.finish("one-line", [net, b.t(2)]))
+    {'not': 1, 'and': 1}
+    """
 
     def __init__(self, bits: int) -> None:
-        self.inputs = tuple(f"t{k}" for k in range(1, 2**bits))
-        self._graph = nx.DiGraph()
-        self._graph.add_nodes_from(self.inputs, kind="input", inputs=())
+        self.bits = bits
+        self.lines = 2**bits - 1
+        self._graph: nx.DiGraph = nx.DiGraph()
+        self._inputs = tuple(f"t{k}" for k in range(1, self.lines + 1))
+        self._graph.add_nodes_from(self._inputs, kind="input", inputs=())
 
-    def gate(self, kind: Kind, *inputs: str) -> str:
-        """Add a gate that reads the named nodes in this order; a mux reads select, then what it gives for 0 and for 1."""
-        name = f"g{self._graph.number_of_nodes() - len(self.inputs) + 1}"
-        self._graph.add_node(name, kind=kind, inputs=inputs)
-        self._graph.add_edges_from((node, name) for node in inputs)
-        return name
+    def t(self, threshold: int) -> str:
+        """The decision at one threshold, 1 .. 2**bits - 1."""
+        return self._inputs[threshold - 1]
 
-    def any_of(self, nodes: list[str]) -> str:
-        """OR of nodes through a balanced tree of two-input gates."""
-        while len(nodes) > 1:
-            paired = [
-                self.gate("or", a, b)
-                for a, b in zip(nodes[::2], nodes[1::2], strict=False)
+    def gate(self, kind: str, *inputs: str) -> str:
+        """Add one gate. A one-input and, or, wired-or is a wire."""
+        if len(inputs) == 1 and kind in ("and", "or", "wired-or"):
+            return inputs[0]
+        net = f"g{self._graph.number_of_nodes() - self.lines}"
+        self._graph.add_node(net, kind=kind, inputs=inputs)
+        self._graph.add_edges_from((source, net) for source in inputs)
+        return net
+
+    def full_adder(self, a: str, b: str, c: str) -> tuple[str, str]:
+        """Sum and carry of three bits of equal weight."""
+        return self.gate("sum", a, b, c), self.gate("carry", a, b, c)
+
+    def tree(self, kind: str, inputs: Sequence[str]) -> str:
+        """A balanced tree of two-input gates."""
+        level = list(inputs)
+        while len(level) > 1:
+            pairs = [
+                self.gate(kind, *level[i : i + 2]) for i in range(0, len(level) - 1, 2)
             ]
-            nodes = paired + nodes[len(nodes) - len(nodes) % 2 :]
-        return nodes[0]
+            level = pairs + level[len(level) - len(level) % 2 :]
+        return level[0]
 
-    def finish(self, outputs: list[str]) -> Netlist:
-        """The netlist with these outputs, lowest bit first."""
-        return Netlist(self._graph, self.inputs, tuple(outputs))
+    def finish(self, name: str, outputs: Sequence[str]) -> Netlist:
+        """The netlist with the given word bits, lowest first; gates that no output needs are left out."""
+        graph = self._graph.copy()
+        needed = set(outputs).union(*(nx.ancestors(graph, net) for net in outputs))
+        needed.update(self._inputs)
+        graph.remove_nodes_from([net for net in self._graph if net not in needed])
+        return Netlist(name, graph, self._inputs, tuple(outputs))
 
 
-def gate_counts(netlist: Netlist) -> Counter[str]:
+def gates(netlist: Netlist) -> list[str]:
+    """Nets of all gates, each after the nets that it reads."""
+    nodes = netlist.graph.nodes
+    return [net for net in nodes if nodes[net]["kind"] != "input"]
+
+
+def gate_counts(netlist: Netlist) -> dict[str, int]:
     """Number of gates of each kind."""
-    return Counter(
-        kind for _, kind in netlist.graph.nodes(data="kind") if kind != "input"
-    )
+    nodes = netlist.graph.nodes
+    return dict(Counter(nodes[net]["kind"] for net in gates(netlist)))
+
+
+def gate_total(netlist: Netlist) -> int:
+    """Number of gates; a full adder is two (sum and carry), a wired OR of any width one."""
+    return netlist.graph.number_of_nodes() - len(netlist.inputs)
 
 
 def depth(netlist: Netlist) -> int:
-    """Gates on the longest way from an input to an output, by networkx's longest path in a directed acyclic graph."""
-    return int(nx.dag_longest_path_length(netlist.graph, default_weight=1))
+    """Gates on the longest way from a decision to a word bit; a full adder counts as one."""
+    return len(nx.dag_longest_path(netlist.graph)) - 1
+
+
+def fan_out(netlist: Netlist) -> dict[str, int]:
+    """How many gate inputs and word bits read each net."""
+    reads = Counter(
+        source
+        for net in netlist.graph.nodes
+        for source in netlist.graph.nodes[net]["inputs"]
+    )
+    reads.update(netlist.outputs)
+    return {net: reads[net] for net in netlist.graph.nodes}
 
 
 def transistors(netlist: Netlist) -> int:
-    """Estimate of the transistor count: static CMOS gates, one transistor for each cell of a wired OR."""
+    """Estimated transistors of a static CMOS build; see the table in this file for what each gate costs."""
     total = 0
-    for _, data in netlist.graph.nodes(data=True):
-        if data["kind"] == "wired-or":
-            total += len(data["inputs"]) + 2
-        elif data["kind"] != "input":
-            total += _TRANSISTORS[data["kind"]] + 2 * max(
-                0,
-                len(data["inputs"]) - (3 if data["kind"] in ("mux", "majority") else 2),
-            )
+    for net in gates(netlist):
+        node = netlist.graph.nodes[net]
+        fixed, each = _TRANSISTORS[node["kind"]]
+        total += fixed + each * len(node["inputs"])
     return total
-
-
-def evaluate(netlist: Netlist, words: NDArray[np.bool_]) -> NDArray[np.int64]:
-    """Codes that the gates make of thermometer words (n, M): (n,)."""
-    lanes = pack(words)
-    values = dict(zip(netlist.inputs, lanes, strict=True))
-    return _run(netlist, values, words.shape[0])
-
-
-def evaluate_readings(
-    netlist: Netlist,
-    word: NDArray[np.bool_],
-    undecided: int,
-    readings: NDArray[np.bool_],
-) -> NDArray[np.int64]:
-    """Codes when each gate that reads one undecided input may see its own level.
-
-    word: (M,); undecided: index of the input; readings: (n, readers) level seen by each reader, in `readers` order.
-    """
-    count = readings.shape[0]
-    values = dict(zip(netlist.inputs, pack(np.tile(word, (count, 1))), strict=True))
-    seen = dict(zip(readers(netlist, undecided), pack(readings), strict=True))
-    return _run(netlist, values, count, (netlist.inputs[undecided], seen))
-
-
-def readers(netlist: Netlist, index: int) -> list[str]:
-    """Gates that read an input; the word's own bit counts as one where the input is itself an output."""
-    name = netlist.inputs[index]
-    return [
-        *netlist.graph.successors(name),
-        *(["output"] if name in netlist.outputs else []),
-    ]
-
-
-def pack(words: NDArray[np.bool_]) -> Lanes:
-    """Columns of words (n, M) as bit lanes (M, n / 64 rounded up)."""
-    count, columns = words.shape
-    lanes = np.zeros((columns, -(-count // 64) * 8), dtype=np.uint8)
-    bits = np.packbits(words.T, axis=1)
-    lanes[:, : bits.shape[1]] = bits
-    return lanes.view(np.uint64)
-
-
-def _run(
-    netlist: Netlist,
-    values: dict[str, Lanes],
-    count: int,
-    doubtful: tuple[str, dict[str, Lanes]] | None = None,
-) -> NDArray[np.int64]:
-    for name in nx.topological_sort(netlist.graph):
-        data = netlist.graph.nodes[name]
-        if data["kind"] == "input":
-            continue
-        read = [
-            doubtful[1][name]
-            if doubtful is not None and node == doubtful[0]
-            else values[node]
-            for node in data["inputs"]
-        ]
-        values[name] = _gate(data["kind"], read)
-    codes = np.zeros(count, dtype=np.int64)
-    for bit, name in enumerate(netlist.outputs):
-        lane = (
-            doubtful[1]["output"]
-            if doubtful is not None and name == doubtful[0]
-            else values[name]
-        )
-        codes |= np.unpackbits(lane.view(np.uint8), count=count).astype(np.int64) << bit
-    return codes
-
-
-def _gate(kind: Kind, read: list[Lanes]) -> Lanes:
-    if kind == "and":
-        return reduce(np.bitwise_and, read)
-    if kind == "and-not":  # all but the last, and not the last
-        return reduce(np.bitwise_and, read[:-1]) & ~read[-1]
-    if kind in ("or", "wired-or"):
-        return reduce(np.bitwise_or, read)
-    if kind == "xor":
-        return reduce(np.bitwise_xor, read)
-    if kind == "majority":
-        a, b, c = read
-        return (a & b) | (c & (a | b))
-    select, zero, one = read
-    return (zero & ~select) | (one & select)

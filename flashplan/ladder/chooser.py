@@ -20,12 +20,12 @@ _HOPELESS = 4.0
 
 @dataclass(frozen=True)
 class ResistanceLimit:
-    """limit in ohm, None where nothing fits; binding: "linearity" or "enob"; note: why nothing fits.
+    """limit in ohm, 0 where nothing fits; binding: "linearity" or "enob"; note: why nothing fits.
 
     effect: the one that takes most of the room that binds.
     """
 
-    limit: float | None
+    limit: float
     binding: str
     note: str = ""
     effect: str = ""
@@ -62,7 +62,7 @@ def largest_resistance(
         resistance, name = float(np.exp(places[best])), _name(parts[best])
         effect = _largest_effect(plan, cell, resistance, name)
         return ResistanceLimit(
-            None,
+            0.0,
             name,
             f"no resistance fits: at {resistance:.3g} ohm still {worst[best]:.3g} times the room, most of it {effect}",
             effect,

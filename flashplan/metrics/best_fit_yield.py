@@ -20,6 +20,7 @@ from flashplan.metrics.gaussian_path import (
     line_vectors,
     string_covariance_times,
 )
+from flashplan.metrics.levelled_string import long_range_loss
 from flashplan.metrics.offset_density import NormalOffsets, OffsetDensity
 
 Array = NDArray[np.float64]
@@ -40,7 +41,9 @@ def best_fit_yield(
     chain with the same deviation of each threshold and the same correlation of neighbours.
     """
     if not isinstance(density, NormalOffsets):
-        raise ValueError("the yield with the best-fit line needs normal offsets")
+        raise ValueError(  # noqa: TRY004 (a wrong choice, not a wrong type)
+            "the yield with the best-fit line needs normal offsets"
+        )
     vectors = line_vectors(2**bits - 1)
     moved = string_covariance_times(vectors, resistor_sigma)
     slope = vectors[:, 1]
@@ -69,8 +72,12 @@ def best_fit_yield(
         levelled_path,
     )
     weights = np.outer(chances, shares).ravel()
-    loss, survive = -np.expm1(-hazards), np.exp(-hazards)
-    return float((weights @ loss).real), float((weights @ survive).real)
+    loss = float((weights @ -np.expm1(-hazards)).real)
+    survive = float((weights @ np.exp(-hazards)).real)
+    if resistor_sigma > 0:
+        more = long_range_loss(density, dnl, inl, resistor_sigma, left, 1.0 + tilt)
+        loss, survive = loss + more, survive - more
+    return loss, survive
 
 
 def _movements(
@@ -82,7 +89,9 @@ def _movements(
     the complex conjugate.
     """
     strength = min(goal / density.sigma, 7.0) * np.abs(vectors).max(axis=0)
-    rules = [hermite_rule(int(np.ceil(2 + 4 * s + s**2)) + 2 * refine) for s in strength]
+    rules = [
+        hermite_rule(int(np.ceil(2 + 4 * s + s**2)) + 2 * refine) for s in strength
+    ]
     z0, z1 = (v.ravel() for v in np.meshgrid(rules[0][0], rules[1][0], indexing="ij"))
     weight = np.outer(rules[0][1], rules[1][1]).ravel()
     z0, z1 = np.round(z0, 12), np.round(z1, 12)
@@ -93,7 +102,7 @@ def _movements(
         on_axis = (z0 == 0) & (z1 != 0)
         weight = weight * np.where(on_axis & (z1 > 0), 2.0, np.where(on_axis, 0.0, 1.0))
     keep = weight > 1e-11
-    return np.array([z0[keep], z1[keep]]), weight[keep]
+    return np.array([z0[keep], z1[keep]]), weight[keep] / weight[keep].sum()
 
 
 def _two_bits(

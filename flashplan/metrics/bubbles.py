@@ -1,34 +1,47 @@
-"""Bubbles of thermometer words, by order."""
+"""Bubbles in thermometer words: where the edge is, and which runs of decisions disagree with it."""
 
 import numpy as np
 from numpy.typing import NDArray
 
-_CHUNK = 2**22  # decisions looked at together
+Words = NDArray[np.bool_]
+
+# Decisions looked at in one go; bounds the memory whatever the number of words.
+_BLOCK = 2**22
 
 
-def count_bubbles_by_order(words: NDArray[np.bool_]) -> dict[int, int]:
-    """Number of bubbles of each order in thermometer words (n, M), lowest threshold first.
+def edges(words: Words) -> NDArray[np.int64]:
+    """Edge of each word (n,): the code whose clean word differs in the fewest decisions; the lowest of equals.
 
-    The edge of a word is where a clean word differs from it in the fewest places, the lowest of several; a bubble is a
-    run of decisions that differ, its order the run's length.
-    Source: common practice; order as in the usual vocabulary (a lone wrong decision is of first order).
+    words: (n, M) bool, lowest threshold first.
 
-    >>> count_bubbles_by_order(np.array([[1, 0, 1, 1, 0, 0]], dtype=bool))
+    >>> edges(np.array([[1, 1, 0, 1, 0, 0, 0]], dtype=bool)).tolist()
+    [2]
+    """
+    # With the edge at c, the zeros below it and the ones above it are wrong: up to a constant, a walk that steps down at
+    # each one and up at each zero.
+    walk = np.zeros((words.shape[0], words.shape[1] + 1), dtype=np.int32)
+    np.cumsum(np.where(words, -1, 1), axis=1, out=walk[:, 1:])
+    return walk.argmin(axis=1)
+
+
+def count_bubbles_by_order(words: Words) -> dict[int, int]:
+    """Number of bubbles of each order in words (n, M) bool, lowest threshold first.
+
+    A bubble is a run of decisions that all disagree with the word's edge, bounded by decisions that agree or by the
+    word's ends; its order is the length of the run. A run may not cross the edge, as it would move it.
+
+    >>> count_bubbles_by_order(np.array([[1, 1, 0, 1, 0, 0, 0]], dtype=bool))
     {1: 1}
     """
-    found = np.zeros(words.shape[1] + 2, dtype=np.int64)
-    rows = max(1, _CHUNK // max(1, words.shape[1]))
-    for start in range(0, words.shape[0], rows):
-        part = words[start : start + rows]
-        ones = np.cumsum(part, axis=1, dtype=np.int64)
-        # Differences from a clean word with e ones: zeros below the edge and ones above it.
-        edges = np.arange(part.shape[1] + 1)
-        below = np.concatenate(
-            [np.zeros((part.shape[0], 1), dtype=np.int64), ones], axis=1
-        )
-        edge = (edges - 2 * below).argmin(axis=1)
-        wrong = part != (edges[:-1] < edge[:, None])
-        step = np.diff(wrong.astype(np.int8), axis=1, prepend=0, append=0)
-        first, last = np.nonzero(step == 1), np.nonzero(step == -1)
-        found += np.bincount(last[1] - first[1], minlength=found.size)
-    return {order: int(count) for order, count in enumerate(found) if count}
+    width = words.shape[1]
+    counts = np.zeros(width + 1, dtype=np.int64)
+    step = max(1, _BLOCK // max(width, 1))
+    for start in range(0, words.shape[0], step):
+        part = words[start : start + step]
+        wrong = part ^ (np.arange(width) < edges(part)[:, None])
+        framed = np.zeros((part.shape[0], width + 2), dtype=np.int8)
+        framed[:, 1:-1] = wrong
+        change = np.diff(framed, axis=1).ravel()
+        orders = np.flatnonzero(change == -1) - np.flatnonzero(change == 1)
+        counts += np.bincount(orders, minlength=width + 1)
+    return {int(order): int(counts[order]) for order in np.flatnonzero(counts)}

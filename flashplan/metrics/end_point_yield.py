@@ -55,7 +55,7 @@ def end_point_yield(
             bow[1:-1],
             mean_gain,
             points[keep],
-            chances[keep],
+            chances[keep] / chances[keep].sum(),
             refine,
         )
     x, y = (v.ravel() for v in np.meshgrid(points, points, indexing="ij"))
@@ -65,7 +65,7 @@ def end_point_yield(
         tilt = np.round((x + y) / density.width, 9)
         chance *= np.where(tilt > 0, 2.0, tilt == 0)
     keep = _carry(chance, rare)
-    x, y, chance = x[keep], y[keep], chance[keep]
+    x, y, chance = x[keep], y[keep], chance[keep] / chance[keep].sum()
     far = density.reach + np.abs(x).max() + np.abs(bow).max()
     gain = mean_gain + (y - x) / steps
     band = make_band(min(inl, far), dnl, density, (0.0,), 2.0 * (1 + 0.25 * refine))
@@ -93,12 +93,12 @@ def _outer_rule(density: OffsetDensity, refine: int) -> tuple[Array, Array]:
     spacing = _SPACING / (1 + 0.3 * refine)
     if isinstance(density, NormalOffsets):
         count = int(np.ceil(density.reach / density.width / spacing))
-        points = (np.arange(-count, count) + 0.5) * spacing * density.width
+        points = np.arange(0.5 - count, count) * spacing * density.width
         chances = density.pdf(points)
     else:
         panels = make_panels(density.reach, density.kinks, density.width, 0.8 / spacing)
         points, chances = panels.nodes, panels.weights * density.pdf(panels.nodes)
-    return points, chances / chances.sum()
+    return points.astype(np.float64), np.asarray(chances / chances.sum())
 
 
 def _least_loss(density: OffsetDensity, dnl: float, inl: float, steps: int) -> float:

@@ -11,6 +11,7 @@ from flashplan.metrics.end_point_yield import end_point_yield
 from flashplan.metrics.fixed_line_yield import fixed_line_yield
 from flashplan.metrics.linearity import FITS, Fit, dnl_inl
 from flashplan.metrics.offset_density import NormalOffsets, OffsetDensity
+from flashplan.metrics.string_alone import string_alone_yield
 
 
 @dataclass(frozen=True, slots=True)
@@ -68,19 +69,23 @@ def linearity_yield(
         return YieldResult(passes, 1.0 - passes)
     if offset_sigma_lsb >= lowest:
         return _solve(NormalOffsets(offset_sigma_lsb), *goals)
-    # offsets small against the string: -log(yield) on a logarithmic scale is nearly a line in sigma squared
-    squares = lowest**2 * np.array([1.0, 1.5, 2.0])
-    rates = [
-        math.log(max(hazard_of(_solve(NormalOffsets(s), *goals)), 1e-300))
-        for s in np.sqrt(squares)
-    ]
-    curve = np.polynomial.Polynomial.fit(squares, rates, 2)
-    rate = math.exp(curve(offset_sigma_lsb**2))
+    alone = string_alone_yield(bits, dnl_lsb, inl_lsb, fit, resistor_sigma, systematic)
+    if offset_sigma_lsb == 0:
+        return YieldResult(alone, 1.0 - alone)
+    # between no offset and the lowest that the quadrature resolves: nearly a parabola
+    least, most = (
+        -math.log(max(alone, 1e-300)),
+        hazard_of(_solve(NormalOffsets(lowest), *goals)),
+    )
+    rate = least + (most - least) * (offset_sigma_lsb / lowest) ** 2
     return YieldResult(math.exp(-rate), -math.expm1(-rate))
 
 
 def smallest_offset_sigma(bits: int, resistor_sigma: float) -> float:
-    """The normal offset's sigma, in LSB, below which linearity_yield extrapolates: a quarter of the string's movement."""
+    """The normal offset's sigma, in LSB, below which linearity_yield interpolates towards zero.
+
+    A quarter of the largest deviation of a string's tap; the chain then needs too many modes.
+    """
     return 0.25 * 0.5 * resistor_sigma * math.sqrt(2**bits)
 
 

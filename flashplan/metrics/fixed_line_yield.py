@@ -75,7 +75,8 @@ def shifted_hazards(
     the LSB that the goals are in; string_path: what of the string's movement the thresholds take part in.
     """
     units = len(shift) + 1
-    spread = 0.5 * resistor_sigma * np.sqrt(units)
+    taps = np.arange(1.0, units)
+    spread = string_path(units, resistor_sigma, taps, 1).deviation.max()
     farthest = 6 * spread + np.abs(shift.real).max()
     half = min(inl, (density.reach + farthest) / gains.min())
     band = make_band(half, dnl, density, (), 2.0 * (1 + 0.25 * refine))

@@ -130,11 +130,12 @@ def hermite_rule(modes: int) -> tuple[Array, Array, Array]:
 
     Nodes beyond 8 standard deviations carry no weight worth counting and are left out.
     """
-    nodes = eigvalsh_tridiagonal(np.zeros(modes), np.sqrt(np.arange(1.0, modes)))
+    all_nodes = eigvalsh_tridiagonal(np.zeros(modes), np.sqrt(np.arange(1.0, modes)))
+    nodes = np.asarray(all_nodes, dtype=np.float64)
     nodes = nodes[np.abs(nodes) < 8.0]
     hermite = np.ones((len(nodes), modes))
     below = np.zeros(len(nodes))
     for n in range(modes - 1):
         above = (nodes * hermite[:, n] - np.sqrt(n) * below) / np.sqrt(n + 1.0)
         below, hermite[:, n + 1] = hermite[:, n], above
-    return nodes, 1.0 / (hermite**2).sum(axis=1), hermite
+    return nodes, np.asarray(1.0 / (hermite**2).sum(axis=1)), hermite

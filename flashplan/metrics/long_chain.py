@@ -72,7 +72,8 @@ def hazard_per_threshold(
     (columns, modes), real or nearly so, and gains (columns, 1).
     """
     gains = np.unique(gains)
-    knots = np.linspace(-reach, reach, int(np.ceil(8 * reach / density.width)) | 1)
+    count = max(9, int(np.ceil(8 * reach / density.width)))
+    knots = np.linspace(-reach, reach, count)
     move, gain = (v.ravel() for v in np.meshgrid(knots, gains, indexing="ij"))
     ends = []
     for count in (12, 24):

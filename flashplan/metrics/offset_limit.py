@@ -57,6 +57,8 @@ def largest_offset_sigma(
         )
 
     floor = smallest_offset_sigma(bits, resistor_sigma)
+    if floor == 0.0 and result(0.0).yield_ == 0.0:
+        raise YieldUnreachable(yield_goal, 0.0)
     return _largest(result, yield_goal, bits, dnl_lsb, inl_lsb, fit, floor)
 
 
@@ -131,7 +133,7 @@ def _largest(
         step = -known[-1][1]
         if len(known) > 1:
             (x0, y0), (x1, y1) = known[-2:]
-            step /= max((y1 - y0) / (x1 - x0), 0.2)  # flat where no sigma will do
+            step /= max((y1 - y0) / (x1 - x0), 0.01)  # flat where no sigma will do
         if abs(step) < 1e-7:  # the next error is far smaller still
             return sigma_at(at + step)
     raise ArithmeticError("the largest offset was not found")

@@ -5,7 +5,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from flashplan.metrics.linearity import Fit, fitted_line
+from flashplan.metrics.linearity import Fit, dnl_inl, fitted_line
 
 # Doubles worked on at a time: small enough to stay in a core's own cache.
 _BLOCK = 2**15
@@ -84,3 +84,15 @@ def judge_arrays(
         max_dnl[part] /= slope
         max_inl[part] /= slope
     return Judgement((max_dnl < dnl_lsb) & (max_inl < inl_lsb), max_dnl, max_inl)
+
+
+def code_percentiles(
+    errors: NDArray[np.float64], fit: Fit, percent: ArrayLike
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return percentiles over arrays of each code's DNL, (percents, M - 1), and each threshold's INL, (percents, M).
+
+    errors (arrays, M) in LSB; percent (percents,) from 0 to 100; results in LSB of the line `fit`.
+    """
+    dnl, inl = dnl_inl(errors, fit)
+    at = np.asarray(percent, dtype=np.float64)
+    return np.percentile(dnl, at, axis=0), np.percentile(inl, at, axis=0)

@@ -17,6 +17,8 @@ Scheme = Literal[
     "mux-tree",
     "fat-tree",
     "gray-logic",
+    "folded-adder",
+    "sorted-rom",
 ]
 
 

@@ -20,8 +20,8 @@ def margin_figure(verdict: Verdict) -> Figure:
     ]
     lines.sort(key=lambda line: line.margin or 0.0, reverse=True)
     figure, (axes,) = new_figure(height=0.9 + 0.3 * len(lines))
-    for place, line in enumerate(lines):
-        used = line.value / line.limit  # type: ignore[operator]
+    parts = [line.value / line.limit for line in lines]  # type: ignore[operator]
+    for place, (line, used) in enumerate(zip(lines, parts, strict=True)):
         drawn = min(max(used, 1 / _FARTHEST), _FARTHEST)
         colour = GOOD if line.met else BAD
         axes.plot(
@@ -41,7 +41,7 @@ def margin_figure(verdict: Verdict) -> Figure:
         )
     axes.axvline(1.0, color=INK, linewidth=1.2)
     axes.set_xscale("log")
-    axes.set_xlim(1 / _FARTHEST, _FARTHEST * 4)
+    axes.set_xlim(1 / _FARTHEST, 6 * min(max([1.0, *parts]), _FARTHEST))
     axes.set_xticks(
         [0.1, 0.2, 0.5, 1, 2, 5, 10], ["0.1", "0.2", "0.5", "1", "2", "5", "10"]
     )
@@ -91,7 +91,7 @@ def linearity_figure(plan: Plan, static: StaticResult) -> Figure:
             -1.15 * max(goal, np.abs(band).max()), 1.15 * max(goal, np.abs(band).max())
         )
         axes.set_xlim(1, code[-1])
-    top.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=3)
+    top.legend(frameon=False, loc="lower left", bbox_to_anchor=(0, 1), ncols=3)
     bottom.set_xlabel("code (DNL) and threshold (INL)")
     return figure
 
@@ -121,7 +121,7 @@ def worst_figure(plan: Plan, static: StaticResult) -> Figure:
     axes.set_xlabel("largest error of an array [LSB]; dashed: its goal")
     axes.set_ylabel("part of arrays below")
     axes.set_ylim(0, 1.02)
-    axes.legend(loc="lower right")
+    axes.legend(frameon=False, loc="lower right")
     return figure
 
 
@@ -197,6 +197,7 @@ def bubble_figure(dynamic: DynamicResult) -> Figure:
                 fontsize=8,
             )
         axes.set_xticks(range(len(orders)), [str(order) for order in orders])
+        axes.set_xlim(-0.6, max(len(orders), 4) - 0.4)
         axes.set_yscale("log")
         axes.set_ylim(0.3 / total, max(counts) / total * 6)
     else:

@@ -1,6 +1,7 @@
 """How every figure looks: size, colours, fonts, and its SVG text."""
 
 import io
+from typing import Any
 
 import matplotlib as mpl
 from matplotlib.axes import Axes
@@ -11,7 +12,7 @@ INK = "#2b2f36"
 COLOURS = ("#0072b2", "#d55e00", "#009e73", "#cc79a7", "#e69f00", "#56b4e9")
 GOOD, BAD, QUIET = "#009e73", "#d55e00", "#9aa3ad"
 
-_STYLE = {
+_STYLE: Any = {
     "font.family": "sans-serif",
     "font.sans-serif": ["DejaVu Sans"],
     "font.size": 9,
@@ -26,7 +27,6 @@ _STYLE = {
     "grid.color": "#e4e7eb",
     "grid.linewidth": 0.7,
     "axes.axisbelow": True,
-    "legend.frameon": False,
     "svg.fonttype": "path",
     "svg.hashsalt": "flashplan",
 }

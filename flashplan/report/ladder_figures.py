@@ -40,5 +40,7 @@ def tap_error_figure(result: LadderResult) -> Figure:
     axes.set_xlabel("tap" + (f"   ({', '.join(absent)})" if absent else ""))
     axes.set_ylabel("error [LSB]")
     axes.set_xlim(1, result.taps.size)
-    axes.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=3, fontsize=8)
+    axes.legend(
+        frameon=False, loc="lower left", bbox_to_anchor=(0, 1), ncols=3, fontsize=8
+    )
     return figure

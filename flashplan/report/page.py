@@ -10,6 +10,7 @@ from jinja2 import Environment
 from matplotlib.figure import Figure
 
 from flashplan.budget.result import BudgetLine, Input
+from flashplan.decoder import fault_maps, rank
 from flashplan.quantity import show
 from flashplan.report import array_figures, decoder_figures, ladder_figures
 from flashplan.report.drawing import as_svg
@@ -29,6 +30,8 @@ if TYPE_CHECKING:
     from flashplan.report.write import Results
 
 _WORD = {True: "met", False: "missed", None: "not judged"}
+# Larger arrays show the same pattern, and every position is tried.
+_FAULT_MAP_BITS = 6
 _CLASS = {"met": "met", "missed": "missed", "not judged": "open"}
 
 
@@ -121,7 +124,7 @@ def _budget(results: "Results") -> Section:
         )
     return Section(
         "What limits, and by how much",
-        verdict_sentence(results.verdict),
+        "",
         [
             _drawn(
                 "margins",
@@ -212,42 +215,50 @@ def _dynamic(results: "Results") -> list[Section]:
 
 
 def _decoders(results: "Results") -> Section:
-    rows = []
-    for scheme in results.decoders.to_dict()["schemes"]:
-        numbers = [
-            scheme[key] for key in ("rms_error_lsb", "max_error_lsb", "wrong_word_rate")
-        ]
-        numbers += [
-            scheme["undecided_rms_error_lsb"],
-            scheme["undecided_max_error_lsb"],
-        ]
-        rows.append(
-            (
-                scheme["name"],
-                str(scheme["gates"]),
-                str(scheme["depth"]),
-                *("-" if number is None else f"{number:.3g}" for number in numbers),
-            )
+    table, bits = results.decoders, results.plan.converter.bits
+    maps = fault_maps(min(bits, _FAULT_MAP_BITS))
+    rows = [
+        (
+            scheme.name,
+            str(scheme.transistors),
+            str(scheme.depth),
+            f"{scheme.rms_error_lsb:.3g}",
+            str(scheme.max_error_lsb),
+            f"{scheme.wrong_word_rate:.2g}",
+            f"{scheme.undecided_rms_error_lsb:.3g}",
+            ("" if scheme.undecided_exact else ">= ")
+            + str(scheme.undecided_max_error_lsb),
+            "good enough" if scheme.good_enough else "costs more",
         )
+        for scheme in rank(table.schemes, "error")
+    ]
     return Section(
         "Decoders",
-        "All schemes on the same thermometer words; errors in LSB against the number of thresholds passed.",
+        table.sentence + " All schemes decode the same thermometer words, best first;"
+        " errors in LSB against the number of thresholds passed.",
         [
             _drawn(
                 "decoders",
-                decoder_figures.ranking_figure(results.decoders),
-                "Cost against error of each scheme.",
-            )
+                decoder_figures.ranking_figure(table),
+                "Error and size of each scheme on this array's words.",
+            ),
+            _drawn(
+                "faults",
+                decoder_figures.fault_map_figure(maps),
+                f"What a bubble costs each scheme by its order and distance from the edge, at {maps.bits} bits: "
+                "the worst over all edges.",
+            ),
         ],
         (
             "scheme",
-            "gates",
+            "transistors",
             "depth",
             "rms error",
             "max error",
             "wrong words",
             "undecided rms",
-            "undecided max",
+            "max",
+            "verdict",
         ),
         rows,
     )

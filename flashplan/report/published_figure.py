@@ -62,6 +62,8 @@ def published_figure(rate: float, power: float | None, enob: float | None) -> Fi
     axes.set_yscale("log")
     axes.set_xlabel("conversions per second [1/s]")
     axes.set_ylabel("energy per conversion [J]")
-    axes.legend(loc="lower left", bbox_to_anchor=(0, 1), ncols=2, fontsize=8)
+    axes.legend(
+        frameon=False, loc="lower left", bbox_to_anchor=(0, 1), ncols=2, fontsize=8
+    )
     figure.colorbar(points, ax=axes, label="effective bits")
     return figure

@@ -9,8 +9,9 @@ from rich.text import Text
 from flashplan.array.result import ArrayResult
 from flashplan.budget.explain import Explanation
 from flashplan.budget.result import Budget, BudgetLine
-from flashplan.cell.check import Verdict
-from flashplan.decoder import DecoderTable
+from flashplan.cell.check import Verdict, VerdictLine
+from flashplan.decoder import DecoderTable, rank
+from flashplan.decoder.compare import Order
 from flashplan.ladder import LadderResult, effects
 from flashplan.measure import MeasureResult
 from flashplan.plan.model import Plan
@@ -46,7 +47,7 @@ def budget_table(budget: Budget) -> RenderableType:
             _share(line.share),
             line_origin(line),
         )
-    origins = [Text()]
+    origins: list[RenderableType] = [Text()]
     for line in budget.lines.values():
         origins.append(Text.assemble((line.name, "bold"), " = ", line.formula))
         origins.append(Padding(Text(line.source, style="dim"), (0, 0, 0, 4)))
@@ -104,13 +105,28 @@ def verdict_table(verdict: Verdict) -> RenderableType:
             line.name,
             show(line.limit, line.unit),
             show(line.value, line.unit),
-            show(line.limit - line.value, line.unit, 3) if known else "-",  # type: ignore[operator]
+            show(_difference(line), line.unit, 3) if known else "-",
             f"{line.margin:+.1%}" if line.margin is not None else "-",
             mark(line.met),
         )
+    notes = [
+        Text(f"{line.name}: {line.note}", style="dim")
+        for line in verdict.lines.values()
+        if line.note
+    ]
     return Group(
-        Text(verdict_sentence(verdict), style=_STYLE[verdict.met]), table, _caution()
+        Text(verdict_sentence(verdict), style=_STYLE[verdict.met]),
+        table,
+        *notes,
+        _caution(),
     )
+
+
+def _difference(line: VerdictLine) -> float:
+    """Limit less value; what is only rounding is nothing."""
+    assert line.limit is not None
+    assert line.value is not None
+    return 0.0 if abs(line.margin or 0.0) < 1e-9 else line.limit - line.value
 
 
 def ladder_table(result: LadderResult) -> RenderableType:
@@ -205,32 +221,42 @@ def array_table(plan: Plan, result: ArrayResult) -> RenderableType:
     return Group(*notes, goals, facts, _caution())
 
 
-def decoder_table(decoders: DecoderTable) -> RenderableType:
-    """All schemes on the same words."""
+def decoder_table(decoders: DecoderTable, order: Order) -> RenderableType:
+    """All schemes on the same words, best first by the chosen order, and which one to take."""
     table = _table(
         "scheme",
-        "gates",
+        "transistors",
         "depth",
-        "rms error",
+        "rms",
         "max",
-        "wrong words",
+        "wrong",
         "undecided rms",
         "max",
+        "toggles",
+        "verdict",
     )
-    for row in decoders.to_dict()["schemes"]:
+    for row in rank(decoders.schemes, order):
         table.add_row(
-            row["name"],
-            str(row["gates"]),
-            str(row["depth"]),
-            _number(row["rms_error_lsb"]),
-            _number(row["max_error_lsb"]),
-            _number(row["wrong_word_rate"]),
-            _number(row["undecided_rms_error_lsb"]),
-            _number(row["undecided_max_error_lsb"]),
+            row.name,
+            str(row.transistors),
+            str(row.depth),
+            _number(row.rms_error_lsb),
+            str(row.max_error_lsb),
+            _number(row.wrong_word_rate),
+            _number(row.undecided_rms_error_lsb),
+            ("" if row.undecided_exact else ">=") + str(row.undecided_max_error_lsb),
+            _number(row.transitions),
+            Text("good enough", style="green")
+            if row.good_enough
+            else Text("costs more", style="yellow"),
         )
     return Group(
+        Text(decoders.sentence, style="bold"),
         table,
-        Text("errors in LSB against the number of thresholds passed", style="dim"),
+        Text(
+            "errors in LSB against the number of thresholds passed; toggles: gate outputs that change per word",
+            style="dim",
+        ),
         _caution(),
     )
 
@@ -270,14 +296,21 @@ def measure_table(result: MeasureResult) -> RenderableType:
     broken = [
         name for name, finding in result.diagnosis.items() if finding.met is False
     ]
-    first = (
-        f"Broken: {', '.join(broken)}."
-        if broken
-        else "No budget line is shown to be broken."
-    )
-    return Group(
-        Text(first, style="bold red" if broken else "green"), facts, found, _caution()
-    )
+    if broken:
+        first = Text(f"Broken: {', '.join(broken)}.", style="bold red")
+    elif result.diagnosis:
+        first = Text("No budget line is shown to be broken.", style="green")
+    elif result.rebuilt:
+        first = Text(
+            "Codes alone cannot tell what explains them: give one column per comparator.",
+            style="yellow",
+        )
+    else:
+        first = Text(
+            "Too few thresholds were reached to tell what explains the codes.",
+            style="yellow",
+        )
+    return Group(first, facts, *([found] if result.diagnosis else []), _caution())
 
 
 def sweep_table(result: SweepResult) -> RenderableType:

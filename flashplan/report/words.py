@@ -6,7 +6,7 @@ import numpy as np
 
 from flashplan.array.result import ArrayResult
 from flashplan.budget.result import BudgetLine
-from flashplan.cell.check import Verdict, VerdictLine
+from flashplan.cell.check import TAKEN, Verdict, VerdictLine
 from flashplan.ladder import LadderResult, effects
 from flashplan.plan.model import Plan
 from flashplan.quantity import show
@@ -74,7 +74,11 @@ def headline(plan: Plan, result: ArrayResult) -> str:
 
 def tightest(verdict: Verdict) -> VerdictLine | None:
     """The judged line with the least margin."""
-    judged = [line for line in verdict.lines.values() if line.margin is not None]
+    judged = [
+        line
+        for line in verdict.lines.values()
+        if line.margin is not None and line.note != TAKEN
+    ]
     return min(judged, key=lambda line: line.margin or 0.0, default=None)
 
 

@@ -12,8 +12,7 @@ from flashplan.budget.result import Budget
 from flashplan.cell.check import Verdict, check_cell
 from flashplan.chain import compare_decoders, simulate_array, solve_ladder
 from flashplan.decoder import DecoderTable
-from flashplan.errors import InputError
-from flashplan.files import as_csv, as_json, write_whole
+from flashplan.files import as_csv, as_json, make_folder, write_whole
 from flashplan.ladder import LadderResult
 from flashplan.plan.model import Plan
 from flashplan.report.page import page_sections, render_page
@@ -69,7 +68,7 @@ def write_report(
     Files: index.html (self-contained), figures/*.svg, one JSON file a verb, CSV files. Raises InputError.
     """
     folder = Path(folder)
-    _make(folder / "figures")
+    make_folder(folder / "figures")
     results = gather_results(plan, executor, progress)
     sections = page_sections(results)
     for section in sections:
@@ -84,15 +83,6 @@ def write_report(
     return Written(
         page, headline(plan, results.array), all(results.array.goals_met.values())
     )
-
-
-def _make(folder: Path) -> None:
-    try:
-        folder.mkdir(parents=True, exist_ok=True)
-    except OSError as error:
-        raise InputError(
-            f"cannot make the folder: {error.strerror or error}", str(folder)
-        ) from None
 
 
 def _documents(results: Results) -> dict[str, dict[str, Any]]:

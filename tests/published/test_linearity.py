@@ -45,4 +45,6 @@ def test_linearity_without_a_fitted_line() -> None:
     dnl, inl = dnl_inl(levels - np.arange(8), "none")
     assert inl.tolist() == [0, 0, -0.5, 0.5, -1, 0.5, -0.5, 0]
     assert dnl.tolist() == [0, -0.5, 1, -1.5, 1.5, -1, 0.5]
-    assert np.flatnonzero(dnl < -1).tolist() == [3]  # the book: not monotonic 011 -> 100
+    assert np.flatnonzero(dnl < -1).tolist() == [
+        3
+    ]  # the book: not monotonic 011 -> 100

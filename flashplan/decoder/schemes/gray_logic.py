@@ -1,40 +1,53 @@
-"""Gray logic: each Gray bit straight from the decisions at which it rises and falls, without lines or ROM."""
+"""gray-logic: each Gray bit straight from the pairs of decisions between which it is 1."""
 
 import numpy as np
 
-from flashplan.decoder.lines import Codes, Words, binary_gates, from_gray
 from flashplan.decoder.netlist import Builder, Netlist
+from flashplan.decoder.schemes.lines import (
+    Codes,
+    Words,
+    bits_of,
+    gray_to_binary,
+    xor_chain,
+)
+
+
+def spans(bits: int, bit: int) -> list[tuple[int, int | None]]:
+    """Thresholds (rise, fall) between which a Gray bit is 1; the top bit rises once and never falls.
+
+    >>> spans(3, 0), spans(3, 2)
+    ([(1, 3), (5, 7)], [(4, None)])
+    """
+    if bit == bits - 1:
+        return [(2**bit, None)]
+    step = 2**bit
+    return [(rise, rise + 2 * step) for rise in range(step, 2**bits, 4 * step)]
 
 
 def decode(words: Words) -> Codes:
-    """Word by word: Gray bit j is t_a and not t_b, ORed over the pairs where it rises at a and falls at b; then binary."""
-    bits = words.shape[1].bit_length()
+    """Gray bit = OR over its spans of (rise passed and fall not); then binary."""
+    bits = bits_of(words)
     codes = np.zeros(words.shape[0], dtype=np.int64)
     for bit in range(bits):
-        rises, falls = _pairs(bit, bits)
-        high = words[:, rises - 1].copy()
-        high[:, : falls.size] &= ~words[:, falls - 1]
-        codes |= high.any(axis=1).astype(np.int64) << bit
-    return from_gray(codes, bits)
+        level = np.zeros(words.shape[0], dtype=bool)
+        for rise, fall in spans(bits, bit):
+            level |= words[:, rise - 1] & (
+                True if fall is None else ~words[:, fall - 1]
+            )
+        codes |= level.astype(np.int64) << bit
+    return gray_to_binary(codes, bits)
 
 
 def build(bits: int) -> Netlist:
-    """One AND for each pair, a balanced OR for each bit, and a chain of XOR."""
-    gates = Builder(bits)
-    t = gates.inputs
-    gray_bits = []
+    """An inverter and an AND gate per span, balanced OR trees, a chain of XOR gates."""
+    b = Builder(bits)
+    word = []
     for bit in range(bits):
-        rises, falls = _pairs(bit, bits)
-        pairs = [
-            gates.gate("and-not", t[a - 1], t[b - 1])
-            for a, b in zip(rises, falls, strict=False)
+        terms = [
+            b.t(rise)
+            if fall is None
+            else b.gate("and", b.t(rise), b.gate("not", b.t(fall)))
+            for rise, fall in spans(bits, bit)
         ]
-        gray_bits.append(gates.any_of(pairs + [t[a - 1] for a in rises[falls.size :]]))
-    return gates.finish(binary_gates(gates, gray_bits))
-
-
-def _pairs(bit: int, bits: int) -> tuple[np.ndarray, np.ndarray]:
-    """Thresholds, from 1, at which a Gray bit rises and falls."""
-    return np.arange(2**bit, 2**bits, 2 ** (bit + 2)), np.arange(
-        3 * 2**bit, 2**bits, 2 ** (bit + 2)
-    )
+        word.append(b.tree("or", terms))
+    return b.finish("gray-logic", xor_chain(b, word))

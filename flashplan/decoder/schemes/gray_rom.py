@@ -1,34 +1,30 @@
-"""Gray ROM: the Gray addresses of all edges ORed, then turned to binary; two neighbouring edges differ in one bit."""
+"""gray-rom: a read-only memory of Gray words, so that two neighbouring lines at once cost little; XOR gates convert."""
 
 import numpy as np
 
-from flashplan.decoder.lines import (
+from flashplan.decoder.netlist import Builder, Netlist
+from flashplan.decoder.schemes.lines import (
     Codes,
     Words,
-    binary_gates,
-    edge_gates,
-    edge_lines,
-    from_gray,
+    above,
+    bits_of,
     gray,
-    or_of_addresses,
-    rom_gates,
+    gray_to_binary,
+    line_gates,
+    or_of,
+    wired_or,
+    xor_chain,
 )
-from flashplan.decoder.netlist import Builder, Netlist
 
 
 def decode(words: Words) -> Codes:
-    """Word by word: OR of the Gray code of k over all edges k, then binary."""
-    count = words.shape[1]
-    return from_gray(
-        or_of_addresses(edge_lines(words), gray(np.arange(1, count + 1))),
-        count.bit_length(),
-    )
+    """OR of the Gray addresses of all lines with threshold k passed and k + 1 not, converted to binary."""
+    addresses = gray(np.arange(1, words.shape[1] + 1))
+    return gray_to_binary(or_of(words & ~above(words), addresses), bits_of(words))
 
 
 def build(bits: int) -> Netlist:
-    """The lines and plane of a ROM with Gray addresses, and a chain of XOR."""
-    gates = Builder(bits)
-    lines = edge_gates(gates, list(gates.inputs))
-    return gates.finish(
-        binary_gates(gates, rom_gates(gates, lines, gray(np.arange(1, 2**bits))))
-    )
+    """Lines and wired ORs as in a binary read-only memory, then a chain of XOR gates from the top bit down."""
+    b = Builder(bits)
+    stored = wired_or(b, line_gates(b), gray(np.arange(1, b.lines + 1)))
+    return b.finish("gray-rom", xor_chain(b, stored))

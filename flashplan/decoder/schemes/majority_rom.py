@@ -1,29 +1,31 @@
-"""ROM behind majority gates: each decision is outvoted by its two neighbours."""
+"""majority-rom: each decision is outvoted by its two neighbours before a read-only memory."""
+
+from itertools import pairwise
 
 import numpy as np
 
-from flashplan.decoder.lines import Codes, Words, edge_gates, rom_gates
 from flashplan.decoder.netlist import Builder, Netlist
 from flashplan.decoder.schemes import rom
+from flashplan.decoder.schemes.lines import Codes, Words, above, below, wired_or
 
 
 def decode(words: Words) -> Codes:
-    """Word by word: each decision becomes the majority of itself and its neighbours, 1 below the first, 0 above the last."""
-    rows = words.shape[0]
-    below = np.concatenate([np.ones((rows, 1), dtype=bool), words[:, :-1]], axis=1)
-    above = np.concatenate([words[:, 1:], np.zeros((rows, 1), dtype=bool)], axis=1)
-    return rom.decode((below & words) | (above & (below | words)))
+    """The binary read-only memory behind the majority of each decision and its two neighbours."""
+    low, high = below(words), above(words)
+    return rom.decode((low & words) | (low & high) | (words & high))
 
 
 def build(bits: int) -> Netlist:
-    """A majority gate for each decision, an OR and an AND at the ends, then a ROM."""
-    gates = Builder(bits)
-    t = gates.inputs
-    voted = [gates.gate("or", t[0], t[1])]
+    """A majority gate per decision (an adder's carry; OR and AND at the ends), then lines and wired ORs."""
+    b = Builder(bits)
+    voted = [b.gate("or", b.t(1), b.t(2))]
     voted += [
-        gates.gate("majority", t[k - 1], t[k], t[k + 1]) for k in range(1, len(t) - 1)
+        b.gate("carry", b.t(k - 1), b.t(k), b.t(k + 1)) for k in range(2, b.lines)
     ]
-    voted.append(gates.gate("and", t[-2], t[-1]))
-    return gates.finish(
-        rom_gates(gates, edge_gates(gates, voted), np.arange(1, 2**bits))
+    voted.append(b.gate("and", b.t(b.lines - 1), b.t(b.lines)))
+    lines = [
+        b.gate("and", net, b.gate("not", higher)) for net, higher in pairwise(voted)
+    ]
+    return b.finish(
+        "majority-rom", wired_or(b, [*lines, voted[-1]], np.arange(1, b.lines + 1))
     )

@@ -1,25 +1,24 @@
-"""ROM: the binary addresses of all edges in the thermometer word, ORed."""
+"""rom: a pair detector per threshold addresses a wired-OR read-only memory of binary words."""
 
 import numpy as np
 
-from flashplan.decoder.lines import (
+from flashplan.decoder.netlist import Builder, Netlist
+from flashplan.decoder.schemes.lines import (
     Codes,
     Words,
-    edge_gates,
-    edge_lines,
-    or_of_addresses,
-    rom_gates,
+    above,
+    line_gates,
+    or_of,
+    wired_or,
 )
-from flashplan.decoder.netlist import Builder, Netlist
 
 
 def decode(words: Words) -> Codes:
-    """Word by word: OR of k over all k with threshold k passed and k + 1 not."""
-    return or_of_addresses(edge_lines(words), np.arange(1, words.shape[1] + 1))
+    """OR of the binary addresses k of all lines with threshold k passed and k + 1 not."""
+    return or_of(words & ~above(words), np.arange(1, words.shape[1] + 1))
 
 
 def build(bits: int) -> Netlist:
-    """One AND for each line, one wired OR for each bit."""
-    gates = Builder(bits)
-    lines = edge_gates(gates, list(gates.inputs))
-    return gates.finish(rom_gates(gates, lines, np.arange(1, 2**bits)))
+    """An inverter and an AND gate per line, a wired OR per bit."""
+    b = Builder(bits)
+    return b.finish("rom", wired_or(b, line_gates(b), np.arange(1, b.lines + 1)))
