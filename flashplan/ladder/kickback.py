@@ -45,13 +45,19 @@ def threshold_shapes(reference: Reference, modes: Modes) -> NDArray:
     return np.asarray(reference.taps @ modes.shape)
 
 
+def summed_decay(modes: Modes, period: float) -> NDArray:
+    """What all edges, one a period in s, leave of each mode just before the next: d / (1 - d), (m,)."""
+    left = modes.rate * period
+    return np.asarray(np.exp(-left) / -np.expm1(-left))
+
+
 def residue_at_rest(reference: Reference, modes: Modes, period: float) -> Floats:
     """As `kickback_per_charge`, of a network with its lasting modes; period in s."""
     shape = threshold_shapes(reference, modes)
     # Charge below minus charge above tap k, as each mode sees it: a cumulative sum instead of a matrix for each k.
     below = np.cumsum(shape, axis=0)
     pushed = 2.0 * below - shape - below[-1]
-    left = reference.split / np.expm1(modes.rate * period)
+    left = reference.split * summed_decay(modes, period)
     return np.asarray(((shape * pushed) @ left).real)
 
 
@@ -76,7 +82,7 @@ def recovery_time(
     )
     coupled = modes.shape.T @ (reference.network.capacitance_to @ drive * full_scale)
     # How far the first decision after the step finds each mode from its new rest.
-    first = coupled * left - turned / np.expm1(modes.rate * period)
+    first = coupled * left - turned * summed_decay(modes, period)
     late = np.abs(first) * np.abs(shape).max(axis=0, initial=0.0)
     total = float(late.sum())
     if total <= RECOVERED_LSB * lsb:

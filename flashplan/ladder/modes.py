@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.linalg import eig, eigh, eigh_tridiagonal
+from scipy.linalg import cholesky, eig, eigh, eigh_tridiagonal, solve_triangular
 from scipy.sparse import csc_array
 from scipy.sparse.csgraph import connected_components
 from scipy.sparse.linalg import eigs, eigsh, splu
@@ -16,7 +16,7 @@ Floats = NDArray[np.float64]
 Complexes = NDArray[np.complex128]
 
 # Up to this many states all modes are worked out; beyond, only those asked for.
-_DENSE = 300
+_DENSE = 200
 
 
 @dataclass(frozen=True)
@@ -112,15 +112,21 @@ def _bandwidth(matrix: csc_array) -> int:
 
 def _ringing(states: States, fastest: float) -> tuple[Complexes, Complexes]:
     radius = float(np.hypot(fastest, _highest_frequency(states)))
-    rate, vectors = _slowest(states, fastest, radius) or eig(
-        states.loss.toarray(), states.storage.toarray()
-    )
+    rate, vectors = _slowest(states, fastest, radius) or _all(states)
     kept = rate.real <= fastest
     rate, vectors = rate[kept], vectors[:, kept]
     sign = np.ones(states.loss.shape[0])
     sign[-states.inductors :] = -1.0
     norm = np.einsum("sm,sm->m", vectors, sign[:, None] * (states.storage @ vectors))
     return rate, vectors / np.sqrt(norm)
+
+
+def _all(states: States) -> tuple[NDArray, NDArray]:
+    """All eigenpairs of A x = rate E x, in coordinates of equal energy, in which they are well scaled."""
+    root = cholesky(states.storage.toarray(), lower=True)
+    half = solve_triangular(root, states.loss.toarray(), lower=True)
+    rate, vectors = eig(solve_triangular(root, half.T, lower=True).T)
+    return rate, solve_triangular(root, vectors, lower=True, trans="T")
 
 
 def _highest_frequency(states: States) -> float:

@@ -207,8 +207,8 @@ def _refuse_undetermined(
 
 
 def _labels(graph: "nx.MultiGraph[str]", node: str) -> str:
-    labels = {part.label for _, _, part in graph.edges(node, data="part")}
-    return ", ".join(sorted(labels))
+    parts: list[tuple[str, str, Part]] = list(graph.edges(node, data="part"))
+    return ", ".join(sorted({part.label for _, _, part in parts}))
 
 
 def with_resistances(network: Network, value: ArrayLike) -> Network:
