@@ -22,6 +22,8 @@ Floats = NDArray[np.float64]
 def mismatch_sigma(plan: Plan, total_resistance: float) -> Floats:
     """Sigma of each threshold in LSB, (M,), to first order in the resistors' own relative sigmas.
 
+    What bias currents add, a small error times a small one, is left out.
+
     Linear in the number of taps for a string; a coarse string or soft forcing takes the whole covariance.
     """
     ladder = plan.ladder
@@ -71,6 +73,8 @@ def mismatch_covariance(plan: Plan, total_resistance: float) -> Floats:
     by Z a g e I r, with Z the network's inverse and a where the resistor hangs.
     Source: sensitivity of linear networks; S. W. Director, R. A. Rohrer, IEEE Trans. Circuit Theory 16(3), 1969 (memory).
     """
+    quiet = plan.ladder.model_copy(update={"bias_current": 0.0})
+    plan = plan.model_copy(update={"ladder": quiet})
     reference = build_reference(plan, Datasheet(), total_resistance)
     sensitivity = _sensitivity(reference) / plan.lsb
     spread = sensitivity * reference.network.resistors.sigma

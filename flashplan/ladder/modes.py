@@ -114,7 +114,8 @@ def _ringing(states: States, fastest: float) -> tuple[Complexes, Complexes]:
     radius = float(np.hypot(fastest, _highest_frequency(states)))
     rate, vectors = _slowest(states, fastest, radius) or _all(states)
     kept = rate.real <= fastest
-    rate, vectors = rate[kept], vectors[:, kept]
+    # Complex even if nothing rings: where the magnetic energy is the larger one, the norm is imaginary.
+    rate, vectors = rate[kept].astype(complex), vectors[:, kept].astype(complex)
     sign = np.ones(states.loss.shape[0])
     sign[-states.inductors :] = -1.0
     norm = np.einsum("sm,sm->m", vectors, sign[:, None] * (states.storage @ vectors))
