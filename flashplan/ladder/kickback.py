@@ -40,9 +40,12 @@ def lasting_modes(reference: Reference, period: float) -> Modes:
     return network_modes(reference.network, fastest=SPENT / period)
 
 
-def threshold_shapes(reference: Reference, modes: Modes) -> NDArray:
-    """Movement of each threshold in each mode, (M, m), complex where an inductor rings."""
-    return np.asarray(reference.taps @ modes.shape)
+def threshold_shapes(reference: Reference, modes: Modes) -> tuple[NDArray, NDArray]:
+    """Movement of each threshold in each mode, and what a charge of 1 C at it adds to each; both (M, m)."""
+    return (
+        np.asarray(reference.taps @ modes.shape),
+        np.asarray(reference.taps @ modes.dual) * reference.split,
+    )
 
 
 def summed_decay(modes: Modes, period: float) -> NDArray:
@@ -53,12 +56,11 @@ def summed_decay(modes: Modes, period: float) -> NDArray:
 
 def residue_at_rest(reference: Reference, modes: Modes, period: float) -> Floats:
     """As `kickback_per_charge`, of a network with its lasting modes; period in s."""
-    shape = threshold_shapes(reference, modes)
+    shape, push = threshold_shapes(reference, modes)
     # Charge below minus charge above tap k, as each mode sees it: a cumulative sum instead of a matrix for each k.
-    below = np.cumsum(shape, axis=0)
-    pushed = 2.0 * below - shape - below[-1]
-    left = reference.split * summed_decay(modes, period)
-    return np.asarray(((shape * pushed) @ left).real)
+    below = np.cumsum(push, axis=0)
+    pushed = 2.0 * below - push - below[-1]
+    return np.asarray(((shape * pushed) @ summed_decay(modes, period)).real)
 
 
 def recovery_time(
@@ -74,13 +76,13 @@ def recovery_time(
     The step couples into the taps, and one period later all comparators turn over, each pushing `charge` (C) the other
     way. A decision is sound when it and all later ones find every tap within RECOVERED_LSB of where it comes to rest.
     """
-    shape = threshold_shapes(reference, modes)
+    shape, push = threshold_shapes(reference, modes)
     left = np.exp(-modes.rate * period)
-    turned = 2.0 * charge * reference.split * shape.sum(axis=0)
+    turned = 2.0 * charge * push.sum(axis=0)
     drive = np.array(
         [reference.drive.get(name, 0.0) for name in reference.network.held]
     )
-    coupled = modes.shape.T @ (reference.network.capacitance_to @ drive * full_scale)
+    coupled = modes.dual.T @ (reference.network.capacitance_to @ drive * full_scale)
     # How far the first decision after the step finds each mode from its new rest.
     first = coupled * left - turned * summed_decay(modes, period)
     late = np.abs(first) * np.abs(shape).max(axis=0, initial=0.0)

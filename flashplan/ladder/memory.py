@@ -49,9 +49,9 @@ def kickback_memory(
     reference = build_reference(plan, cell, resistance)
     period = 1.0 / plan.converter.sample_rate
     modes = network_modes(reference.network, fastest=-np.log(_FORGOTTEN) / period)
-    shape = threshold_shapes(reference, modes)
-    ones = np.concatenate([np.zeros((1, shape.shape[1])), np.cumsum(shape, axis=0)])
-    pushed = cell.kickback_charge * reference.split * (2.0 * ones - ones[-1])
+    shape, push = threshold_shapes(reference, modes)
+    ones = np.concatenate([np.zeros((1, push.shape[1])), np.cumsum(push, axis=0)])
+    pushed = cell.kickback_charge * (2.0 * ones - ones[-1])
     return KickbackMemory(np.exp(-modes.rate * period), shape / plan.lsb, pushed)
 
 

@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 from scipy.linalg import cholesky, eig, eigh, eigh_tridiagonal, solve_triangular
 from scipy.sparse import csc_array
 from scipy.sparse.csgraph import connected_components
-from scipy.sparse.linalg import eigs, eigsh, splu
+from scipy.sparse.linalg import LinearOperator, eigs, eigsh, splu
 
 from flashplan.ladder.network import Network
 from flashplan.ladder.states import States, network_states
@@ -16,18 +16,19 @@ Floats = NDArray[np.float64]
 Complexes = NDArray[np.complex128]
 
 # Up to this many states all modes are worked out; beyond, only those asked for.
-_DENSE = 200
+_DENSE = 300
 
 
 @dataclass(frozen=True)
 class Modes:
-    """The m modes of a network: rate (m,) in 1/s, shape (f, m) of its free nodes; complex where an inductor rings.
+    """The m modes of a network: rate (m,) in 1/s, shape and dual (f, m) of its free nodes; complex where an inductor rings.
 
-    A charge q (f,) pushed into the nodes raises their voltages at time t by Re{shape @ (exp(-rate t) * (shape.T @ q))}.
+    A charge q (f,) pushed into the nodes raises their voltages at time t by Re{shape @ (exp(-rate t) * (dual.T @ q))}.
     """
 
     rate: NDArray
     shape: NDArray
+    dual: NDArray
 
 
 def network_modes(network: Network, fastest: float = np.inf) -> Modes:
@@ -35,14 +36,14 @@ def network_modes(network: Network, fastest: float = np.inf) -> Modes:
 
     Without inductors A and E are symmetric: G x = rate C x, x' C x = 1, real. A chain of nodes in order becomes
     tridiagonal by scaling with sqrt(C) and is solved as such, only for the modes asked for.
-    With inductors the modes are complex and orthogonal without conjugation: v' C v - i' L i = 1, since a network of
-    R, L and C is reciprocal. Source: modal analysis of linear systems; LAPACK and ARPACK through scipy.
+    With inductors the modes are complex and orthogonal without conjugation in v' C v - i' L i, since a network of R, L
+    and C is reciprocal. Source: modal analysis of linear systems; LAPACK and ARPACK through scipy.
     """
     states = network_states(network)
     count, part = connected_components(
         abs(states.loss) + abs(states.storage), directed=False
     )
-    rates, shapes = [], []
+    rates, shapes, duals = [], [], []
     for index in range(count):
         own = np.flatnonzero(part == index)
         inner = States(
@@ -54,9 +55,19 @@ def network_modes(network: Network, fastest: float = np.inf) -> Modes:
         rate, vectors = (
             _ringing(inner, fastest) if inner.inductors else _resistive(inner, fastest)
         )
-        rates.append(rate)
-        shapes.append(np.asarray(inner.nodes @ vectors))
-    return Modes(np.concatenate(rates), np.concatenate(shapes, axis=1))
+        kept = rate.real <= fastest
+        rates.append(rate[kept])
+        shapes.append(np.asarray(inner.nodes @ vectors[:, kept]))
+        duals.append(
+            np.asarray(inner.nodes @ _duals(inner, vectors[:, kept]))
+            if inner.inductors
+            else shapes[-1]
+        )
+    return Modes(
+        np.concatenate(rates),
+        np.concatenate(shapes, axis=1),
+        np.concatenate(duals, axis=1),
+    )
 
 
 def _resistive(states: States, fastest: float) -> tuple[NDArray, NDArray]:
@@ -76,32 +87,26 @@ def _resistive(states: States, fastest: float) -> tuple[NDArray, NDArray]:
                 main, beside, select="v", select_range=(-1.0, fastest)
             )
         return rate, vectors / root[:, None]
-    rate, vectors = _slowest(states, fastest, fastest) or eigh(
-        states.loss.toarray(), states.storage.toarray()
-    )
-    kept = rate <= fastest
-    return rate[kept], vectors[:, kept]
+    if own.size > _DENSE and np.isfinite(fastest):
+        wanted = 24
+        while wanted < own.size // 4:
+            rate, vectors = eigsh(
+                states.loss,
+                k=wanted,
+                M=states.storage,
+                sigma=0.0,
+                v0=_start(own.size, 0),
+            )
+            if rate.max() > fastest:
+                return rate, vectors
+            wanted *= 2
+    rate, vectors = eigh(states.loss.toarray(), states.storage.toarray())
+    return rate, vectors
 
 
-def _slowest(
-    states: States, fastest: float, radius: float
-) -> tuple[NDArray, NDArray] | None:
-    """All eigenpairs of A x = rate E x with |rate| up to the radius, and some more; None where that is most of them."""
-    size = states.loss.shape[0]
-    if size <= _DENSE or np.isinf(fastest):
-        return None
-    # A fixed start with no symmetry of its own, so that no mode is missed and every run gives the same numbers.
-    start = np.cos(np.arange(size) ** 2)
-    search = eigs if states.inductors else eigsh
-    wanted = 24
-    while wanted < size // 4:
-        rate, vectors = search(
-            states.loss, k=wanted, M=states.storage, sigma=0.0, v0=start
-        )
-        if np.abs(rate).max() > radius:
-            return rate, vectors
-        wanted *= 2
-    return None
+def _start(size: int, turn: int) -> Floats:
+    """A start of a search with no symmetry of its own, so that no mode is missed and every run gives the same numbers."""
+    return np.cos((np.arange(size) + np.pi * turn) ** 2)
 
 
 def _bandwidth(matrix: csc_array) -> int:
@@ -110,16 +115,50 @@ def _bandwidth(matrix: csc_array) -> int:
     return int(np.abs(rows - columns)[entries.data != 0].max(initial=0))
 
 
-def _ringing(states: States, fastest: float) -> tuple[Complexes, Complexes]:
-    radius = float(np.hypot(fastest, _highest_frequency(states)))
-    rate, vectors = _slowest(states, fastest, radius) or _all(states)
-    kept = rate.real <= fastest
-    # Complex even if nothing rings: where the magnetic energy is the larger one, the norm is imaginary.
-    rate, vectors = rate[kept].astype(complex), vectors[:, kept].astype(complex)
-    sign = np.ones(states.loss.shape[0])
-    sign[-states.inductors :] = -1.0
-    norm = np.einsum("sm,sm->m", vectors, sign[:, None] * (states.storage @ vectors))
-    return rate, vectors / np.sqrt(norm)
+def _ringing(states: States, fastest: float) -> tuple[NDArray, NDArray]:
+    """Eigenpairs of A x = rate E x: all of them, or at least those with Re rate <= fastest.
+
+    The largest magnitude of such a rate follows from both bounds. Rates are found slowest first, two dozen at a time,
+    those found taken out of the next search, until one finds none: two ends that ring alike and hardly see each other
+    share a rate, of which a single search need not find both modes.
+    """
+    size = states.loss.shape[0]
+    if size <= _DENSE or np.isinf(fastest):
+        return _all(states)
+    radius = np.hypot(fastest, _highest_frequency(states))
+    solve = splu(states.loss).solve
+    signs = _signs(states)
+    rate, vectors = np.empty(0, dtype=complex), np.empty((size, 0), dtype=complex)
+    while rate.size < size // 4:
+        duals = _duals(states, vectors)
+        scaled = vectors / rate
+
+        def rest(x: NDArray, found: NDArray = scaled, dual: NDArray = duals) -> NDArray:
+            stored = np.asarray(states.storage @ x.ravel())
+            back: NDArray = solve(stored.real) + 1j * solve(stored.imag)
+            return back - found @ (dual.T @ (signs * stored))
+
+        search = LinearOperator((size, size), matvec=rest, dtype=complex)
+        start = _start(size, rate.size).astype(complex)
+        slowness, more = eigs(search, k=24, v0=start)
+        near = np.abs(slowness) >= 1 / radius
+        if not near.any():
+            return rate, vectors
+        rate = np.concatenate([rate, 1 / slowness[near]])
+        vectors = np.concatenate([vectors, more[:, near]], axis=1)
+    return _all(states)
+
+
+def _signs(states: States) -> Floats:
+    signs = np.ones(states.loss.shape[0])
+    signs[signs.size - states.inductors :] = -1.0
+    return signs
+
+
+def _duals(states: States, vectors: NDArray) -> NDArray:
+    """Vectors y with y_j' S E x_k = 1 for j = k and 0 else, S the signs; modes of the same rate are told apart so."""
+    stored: NDArray = np.asarray(states.storage @ vectors) * _signs(states)[:, None]
+    return np.linalg.solve(vectors.T @ stored, vectors.T).T
 
 
 def _all(states: States) -> tuple[NDArray, NDArray]:
@@ -127,7 +166,9 @@ def _all(states: States) -> tuple[NDArray, NDArray]:
     root = cholesky(states.storage.toarray(), lower=True)
     half = solve_triangular(root, states.loss.toarray(), lower=True)
     rate, vectors = eig(solve_triangular(root, half.T, lower=True).T)
-    return rate, solve_triangular(root, vectors, lower=True, trans="T")
+    # Complex even if nothing rings, since where magnetic energy is the larger one, a norm is imaginary.
+    vectors = solve_triangular(root, vectors, lower=True, trans="T")
+    return rate, vectors.astype(complex)
 
 
 def _highest_frequency(states: States) -> float:

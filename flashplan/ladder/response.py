@@ -41,7 +41,7 @@ def modal_response(network: Network, charge: Floats, times: Floats) -> Floats:
     """As `charge_response`, by modes."""
     modes = network_modes(network, fastest=SPENT / float(times[0]))
     left = np.exp(-np.multiply.outer(times, modes.rate))
-    return np.asarray(((left * (modes.shape.T @ charge)) @ modes.shape.T).real)
+    return np.asarray(((left * (modes.dual.T @ charge)) @ modes.shape.T).real)
 
 
 def stepped_response(

@@ -59,9 +59,8 @@ def worst_disturbance(
     residue = residue_at_rest(reference, modes, period)
     worst = int(np.argmax(np.abs(residue)))
     sign = np.sign(worst - np.arange(plan.comparators))
-    charge = cell.kickback_charge * reference.split * sign
-    shape = threshold_shapes(reference, modes)
-    pushed = (charge @ shape) / -np.expm1(-modes.rate * period)
+    shape, push = threshold_shapes(reference, modes)
+    pushed = (cell.kickback_charge * sign @ push) / -np.expm1(-modes.rate * period)
     moved = (
         np.exp(-np.multiply.outer(inside, modes.rate)) @ (shape[worst] * pushed)
     ).real

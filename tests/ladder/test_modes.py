@@ -17,7 +17,7 @@ def test_modes_move_a_charge_as_the_matrix_exponential_does(layout: str) -> None
     modes = network_modes(reference.network)
     for time in (1e-13, 3e-12, 1e-10):
         exact = nodes @ expm(-system * time) @ (pushed @ charge)
-        found = modes.shape @ (np.exp(-modes.rate * time) * (modes.shape.T @ charge))
+        found = modes.shape @ (np.exp(-modes.rate * time) * (modes.dual.T @ charge))
         scale = np.abs(exact).max()
         np.testing.assert_allclose(found.real, exact, atol=1e-8 * scale)
         assert np.abs(np.imag(found)).max() < 1e-8 * scale
@@ -62,7 +62,27 @@ def test_capacitance_between_free_nodes_is_taken_in() -> None:
     )
     time, charge = 1e-10, np.array([1e-15, 0.0])
     np.testing.assert_allclose(
-        modes.shape @ (np.exp(-modes.rate * time) * (modes.shape.T @ charge)),
+        modes.shape @ (np.exp(-modes.rate * time) * (modes.dual.T @ charge)),
         nodes @ expm(-system * time) @ (pushed @ charge),
         rtol=1e-10,
     )
+
+
+@pytest.mark.parametrize("layout", ["ringing", "a ringing pair"])
+def test_two_ends_that_ring_alike_are_two_modes_however_many_taps(layout: str) -> None:
+    # Above 300 states modes are searched for; here both ends share a rate to the last digit.
+    network = reference_of(ladder_plan(9, 20_000.0, **LAYOUTS[layout])).network
+    every = network_modes(network)
+    fastest = 2e10
+    some = network_modes(network, fastest)
+    slow = every.rate.real <= fastest
+    assert some.rate.size == np.count_nonzero(slow)
+    assert np.count_nonzero(np.abs(some.rate.imag) > 1e9) >= 4
+    for time in (1e-10, 2e-9):
+        answers = [
+            ((modes.shape * np.exp(-modes.rate * time)) @ modes.dual[::37].T).real
+            for modes in (some, every)
+        ]
+        scale = np.abs(answers[1]).max()
+        left = np.exp(-fastest * time) * 1e2
+        np.testing.assert_allclose(answers[0], answers[1], atol=(1e-8 + left) * scale)

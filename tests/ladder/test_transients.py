@@ -47,10 +47,10 @@ def test_a_code_step_adds_up_edge_by_edge(layout: str) -> None:
         state = expm(-system * time) @ step
         for edge in range(1, int(time / period) + 1):
             state = state + expm(-system * (time - edge * period)) @ turn
-        # Steps err by 1e-7 of a charge's start each; those of three charges add.
+        # Steps err by 1e-8 of a charge's start each; those of three charges add.
         start = np.abs(read @ turn).max()
         np.testing.assert_allclose(
-            found.movement_lsb[index], read @ state, atol=5e-6 * start
+            found.movement_lsb[index], read @ state, atol=1e-6 * start
         )
 
 

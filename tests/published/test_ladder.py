@@ -170,7 +170,7 @@ def test_modes_are_what_scipy_integrates() -> None:
     integrated = solve_ivp(
         lambda _, v: -rate @ v, (0, end), start, rtol=1e-9, atol=1e-15
     ).y[:, -1]
-    exact = modes.shape @ (np.exp(-modes.rate * end) * (modes.shape.T @ charge))
+    exact = modes.shape @ (np.exp(-modes.rate * end) * (modes.dual.T @ charge))
     np.testing.assert_allclose(exact, integrated, rtol=1e-6, atol=1e-9)
 
 
