@@ -12,12 +12,17 @@ if TYPE_CHECKING:
     from flashplan.budget.derive import derive_budget
     from flashplan.budget.explain import explain_line
     from flashplan.cell.check import check_cell
-    from flashplan.chain import compare_decoders, measure, simulate_array, solve_ladder
+    from flashplan.chain import (
+        compare_decoders,
+        measure_codes,
+        simulate_array,
+        solve_ladder,
+    )
     from flashplan.decoder import decode
     from flashplan.errors import InputError
     from flashplan.plan.load import load_cell, load_plan
     from flashplan.report.write import write_report
-    from flashplan.sweep import sweep
+    from flashplan.sweep import run_sweep
 
 _HOMES = {
     "load_plan": "flashplan.plan.load",
@@ -29,8 +34,8 @@ _HOMES = {
     "check_cell": "flashplan.cell.check",
     "simulate_array": "flashplan.chain",
     "compare_decoders": "flashplan.chain",
-    "measure": "flashplan.chain",
-    "sweep": "flashplan.sweep",
+    "measure_codes": "flashplan.chain",
+    "run_sweep": "flashplan.sweep",
     "write_report": "flashplan.report.write",
     "decode": "flashplan.decoder",
     "InputError": "flashplan.errors",
@@ -45,11 +50,11 @@ __all__ = [
     "explain_line",
     "load_cell",
     "load_plan",
-    "measure",
+    "measure_codes",
     "plan_at_limits",
+    "run_sweep",
     "simulate_array",
     "solve_ladder",
-    "sweep",
     "write_report",
 ]
 

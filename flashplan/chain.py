@@ -45,10 +45,17 @@ def compare_decoders(
     plan, cell = _ready(plan, cell)
     if result is None:
         result = array.simulate_array(plan, cell, executor, progress)
-    return decoder.compare_schemes(plan, array.decoder_words(plan, cell, result))
+    if result.dynamic is None:
+        missing = ", ".join(result.left_out)
+        raise InputError(
+            f"decoders are compared on converted words, and the cell does not give {missing}",
+            plan.source,
+        )
+    words = array.decoder_words(plan, result.dynamic, result.word_error_rate)
+    return decoder.compare_schemes(plan, words)
 
 
-def measure(codes: str | Path, plan: Plan) -> MeasureResult:
+def measure_codes(codes: str | Path, plan: Plan) -> MeasureResult:
     """Measure and explain a file of captured codes against the plan and its budget. Raises InputError."""
     limits = {name: line.limit for name, line in derive_budget(plan).lines.items()}
     capture = read_capture(codes, plan.converter.bits)

@@ -209,7 +209,7 @@ def sweep(
     if figure is not None and len(axes) > 2:
         raise InputError(f"a figure takes one or two axes, not {len(axes)}", "--figure")
     with _progress() as progress, _executor(workers, cluster) as executor:
-        result = fp.sweep(
+        result = fp.run_sweep(
             loaded, axes, store=store, executor=executor, progress=progress
         )
     if csv is not None:
@@ -241,7 +241,7 @@ def measure(
     import flashplan as fp
     from flashplan.report.tables import measure_table
 
-    result = fp.measure(codes, fp.load_plan(plan))
+    result = fp.measure_codes(codes, fp.load_plan(plan))
     _emit(result.to_dict(), lambda: measure_table(result), json, out)
 
 

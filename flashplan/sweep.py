@@ -86,7 +86,7 @@ class _Point:
         }
 
 
-def sweep(
+def run_sweep(
     plan: Plan,
     axes: Sequence[Axis],
     store: str | Path | None = None,

@@ -6,7 +6,9 @@ import numpy as np
 
 from flashplan.array import dynamic, static
 from flashplan.array.result import ArrayResult, DynamicResult, StaticResult
+from flashplan.array.words import decoder_words
 from flashplan.cell.check import TOLERANCE
+from flashplan.decoder import scheme_energy
 from flashplan.ladder import LadderResult, solve_ladder, systematic_errors
 from flashplan.plan.datasheet import Datasheet
 from flashplan.plan.model import Plan
@@ -56,11 +58,14 @@ def simulate_array(
         if set(left_out) & set(_TIME_KEYS)
         else dynamic.undecided_word_rate(plan, cell)
     )
+    energy = None
+    if dynamic_part is not None:
+        energy = scheme_energy(plan, decoder_words(plan, dynamic_part, word_error_rate))
     return ArrayResult(
         static=static_part,
         dynamic=dynamic_part,
         word_error_rate=word_error_rate,
-        power=array_power(plan, cell, ladder),
+        power=array_power(plan, cell, ladder, energy),
         goals_met=_goals_met(
             plan, static_part, dynamic_part, word_error_rate, left_out
         ),
@@ -69,23 +74,24 @@ def simulate_array(
 
 
 def array_power(
-    plan: Plan, cell: Datasheet, ladder: LadderResult
+    plan: Plan, cell: Datasheet, ladder: LadderResult, decoder_energy: float | None
 ) -> dict[str, float | None]:
-    """Power in W of comparators, ladder and decoder; None where the datasheet or the plan does not give it."""
+    """Power in W of comparators, ladder and decoder; None where the datasheet or the plan does not give it.
+
+    decoder_energy: in J per conversion.
+    """
+    rate = plan.converter.sample_rate
     comparators = None
     if cell.energy is not None and cell.static_power is not None:
-        comparators = plan.comparators * (
-            cell.energy * plan.converter.sample_rate + cell.static_power
-        )
-    decoder = None
-    total = None
-    if comparators is not None and decoder is not None:
-        total = comparators + ladder.power + decoder
+        comparators = plan.comparators * (cell.energy * rate + cell.static_power)
+    decoder = None if decoder_energy is None else decoder_energy * rate
+    parts = (comparators, ladder.power, decoder)
+    known = [part for part in parts if part is not None]
     return {
         "comparators": comparators,
         "ladder": ladder.power,
         "decoder": decoder,
-        "total": total,
+        "total": sum(known) if len(known) == len(parts) else None,
     }
 
 

@@ -1,6 +1,12 @@
 """Thermometer code to word: gate netlists, one module per scheme, cost, comparison."""
 
-from flashplan.decoder.compare import DecoderTable, SchemeResult, compare_schemes, rank
+from flashplan.decoder.compare import (
+    DecoderTable,
+    SchemeResult,
+    compare_schemes,
+    rank,
+    scheme_energy,
+)
 from flashplan.decoder.decode import decode
 from flashplan.decoder.fault_map import FaultMaps, fault_maps
 from flashplan.decoder.verilog import verilog_bench, verilog_module
@@ -15,6 +21,7 @@ __all__ = [
     "decode",
     "fault_maps",
     "rank",
+    "scheme_energy",
     "verilog_bench",
     "verilog_module",
 ]

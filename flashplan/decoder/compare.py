@@ -80,16 +80,29 @@ def compare_schemes(plan: Plan, words: DecoderWords) -> DecoderTable:
     Readings of comparators with many readers are drawn from the plan's seed, the same for every scheme.
     """
     conversions = int(words.clean_counts.sum()) + words.bubbly.shape[0]
-    packed = PackedWords(
-        pack(clean_words(plan.comparators)),
-        words.clean_counts,
-        pack(words.bubbly),
-        words.bubbly.shape[0],
-    )
+    packed = _packed(words)
     passed = words.bubbly.sum(axis=1, dtype=np.int64)
     schemes = tuple(_judge(name, plan, words, packed, passed) for name in SCHEMES)
     orders = count_bubbles_by_order(words.bubbly)
     return DecoderTable(schemes, conversions, orders, _sentence(schemes, orders))
+
+
+def scheme_energy(plan: Plan, words: DecoderWords) -> float | None:
+    """Energy of the plan's own scheme in J per conversion, None without decoder.gate_energy."""
+    if plan.decoder.gate_energy is None:
+        return None
+    program = compile_netlist(SCHEMES[plan.decoder.scheme].build(plan.converter.bits))
+    return plan.decoder.gate_energy * transitions_per_word(program, _packed(words))
+
+
+def _packed(words: DecoderWords) -> PackedWords:
+    comparators = words.clean_counts.size - 1
+    return PackedWords(
+        pack(clean_words(comparators)),
+        words.clean_counts,
+        pack(words.bubbly),
+        words.bubbly.shape[0],
+    )
 
 
 def rank(schemes: Sequence[SchemeResult], by: Order) -> list[SchemeResult]:

