@@ -227,34 +227,33 @@ def decoder_table(decoders: DecoderTable, order: Order) -> RenderableType:
         "scheme",
         "transistors",
         "depth",
+        "toggles",
         "rms",
         "max",
-        "wrong",
-        "undecided rms",
+        "undecided",
         "max",
-        "toggles",
-        "verdict",
+        "fits",
     )
     for row in rank(decoders.schemes, order):
         table.add_row(
             row.name,
             str(row.transistors),
             str(row.depth),
+            _number(row.transitions),
             _number(row.rms_error_lsb),
             str(row.max_error_lsb),
-            _number(row.wrong_word_rate),
             _number(row.undecided_rms_error_lsb),
             ("" if row.undecided_exact else ">=") + str(row.undecided_max_error_lsb),
-            _number(row.transitions),
-            Text("good enough", style="green")
+            Text("yes", style="green")
             if row.good_enough
-            else Text("costs more", style="yellow"),
+            else Text("no", style="yellow"),
         )
     return Group(
         Text(decoders.sentence, style="bold"),
         table,
         Text(
-            "errors in LSB against the number of thresholds passed; toggles: gate outputs that change per word",
+            "errors in LSB, rms and largest, over all words and given an undecided comparator;"
+            " toggles: gate outputs that change per word",
             style="dim",
         ),
         _caution(),
