@@ -13,7 +13,7 @@ from flashplan.cell.integrate import Trajectory, integrate
 Floats = NDArray[np.float64]
 
 # A differential output this part of the supply apart has left the linear range: its sign cannot turn any more.
-_DECIDED = 0.25
+DECIDED = 0.25
 
 
 @dataclass(frozen=True)
@@ -126,13 +126,13 @@ def decide(
     start: Floats,
     difference: ArrayLike,
     ramp: ArrayLike = 0.0,
-    until_decided: bool = False,
+    until: float | None = None,
     time: float | None = None,
 ) -> Decision:
     """One decision of all instances from a reset state.
 
     difference V and ramp V/s of the input, (instances,) or scalar; time: length of the run from mid-edge, the setup's
-    decision time if None; until_decided ends it once every instance's outputs are a quarter of the supply apart.
+    decision time if None; until ends it once every instance's outputs are that part of the supply apart.
     """
     half = setup.edge / 2.0
     drive, breaks = clock_drive(
@@ -145,8 +145,10 @@ def decide(
     plus, minus = output_rows(setup.network)
 
     def decided(time: float, voltages: Floats) -> bool:
+        if until is None or time <= setup.edge:
+            return False
         apart = np.abs(voltages[plus] - voltages[minus])
-        return bool(time > setup.edge and apart.min() > _DECIDED * setup.network.supply)
+        return bool(apart.min() > until * setup.network.supply)
 
     length = setup.decision_time if time is None else time
     path = run(
@@ -156,7 +158,7 @@ def decide(
         start,
         (0.0, half + length),
         breaks,
-        decided if until_decided else None,
+        decided,
     )
     return Decision(
         path.time - half, path.voltages[:, plus] - path.voltages[:, minus], path

@@ -1,0 +1,72 @@
+"""Steady states of many instances of a network at once, by pseudo-transient continuation."""
+
+import numpy as np
+from numpy.typing import NDArray
+
+from flashplan.cell.circuit import Network, device_currents, with_driven
+from flashplan.cell.device import DeviceParameters
+
+Floats = NDArray[np.float64]
+
+_PROBE = 1e-5  # V, of the difference quotients
+_SETTLED = 1e-9  # V, last movement of any node
+
+
+def steady_state(
+    network: Network,
+    parameters: DeviceParameters,
+    driven: Floats,
+    start: Floats,
+    first_step: float,
+    limit: int = 800,
+) -> tuple[Floats, NDArray[np.bool_]]:
+    """Free nodes at rest with constant driven nodes: (voltages (free, instances), failed (instances,)).
+
+    driven: (driven, instances); start: (free, instances); first_step: s, short against the circuit's time constants.
+    Linearly implicit Euler steps whose length grows as the rates fall: the path first follows the circuit's own
+    transient, so that of several stable states the one is found that the circuit would fall into from `start`.
+    An instance that has not come to rest after `limit` steps counts as failed.
+    Source: C. T. Kelley, D. E. Keyes, "Convergence analysis of pseudo-transient continuation", SIAM J. Numer. Anal.
+    35(2), 1998 (memory).
+    """
+    free, instances = start.shape
+    state = np.array(start, dtype=float)
+    step = np.full(instances, first_step)
+    limit_move = 0.05 * network.supply
+    settled = np.zeros(instances, dtype=bool)
+    rates = _rates(network, parameters, driven, state)
+    size = np.abs(rates).max(axis=0)
+    for _ in range(limit):
+        matrix = np.empty((instances, free, free))
+        for k in range(free):
+            moved = state.copy()
+            moved[k] += _PROBE
+            matrix[:, :, k] = (
+                -(_rates(network, parameters, driven, moved) - rates) / _PROBE
+            ).T
+        matrix += np.eye(free) / step[:, None, None]
+        move = np.linalg.solve(matrix, rates.T[:, :, None])[:, :, 0].T
+        largest = np.abs(move).max(axis=0)
+        taken = (largest < limit_move) & ~settled
+        state = np.where(taken, state + move, state)
+        rates = _rates(network, parameters, driven, state)
+        new = np.abs(rates).max(axis=0)
+        # Growing rates mean that the circuit moves away from a balance, which a long step would fall back into.
+        step *= np.where(taken & (new < 1.1 * size), 2.5, 0.4)
+        step = np.minimum(step, 1e9 * first_step)
+        size = new
+        # Rates also fall to a crawl beside a balance; only a long step shows that nothing moves any more.
+        settled |= taken & (largest < _SETTLED) & (step > 1e6 * first_step)
+        if settled.all():
+            break
+    return state, ~settled | ~np.isfinite(state).all(axis=0)
+
+
+def _rates(
+    network: Network, parameters: DeviceParameters, driven: Floats, free: Floats
+) -> Floats:
+    full = with_driven(free, driven)
+    rates: Floats = network.from_current @ device_currents(network, parameters, full)
+    if network.circuit.resistors:
+        rates += network.from_voltage @ full
+    return rates
