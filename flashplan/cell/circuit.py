@@ -1,7 +1,7 @@
 """A comparator as parts between named nodes, and the matrices that its node equations need."""
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -208,13 +208,46 @@ def slopes(
         driven, driven_slope = drive(time)
         full = with_driven(free, driven)
         current = device_currents(network, parameters, full)
-        result: Floats = network.from_current @ current
+        result = apply_matrix(network.from_current, current)
         if network.circuit.resistors:
-            result += network.from_voltage @ full
-        result += network.from_slope @ driven_slope
+            result += apply_matrix(network.from_voltage, full)
+        result += apply_matrix(network.from_slope, driven_slope)
         return result
 
     return right_hand_side
+
+
+def apply_matrix(matrix: Floats, values: Floats) -> Floats:
+    """matrix @ values for one matrix (rows, columns), or for one of each instance (instances, rows, columns).
+
+    values: (columns, instances); result: (rows, instances).
+    """
+    if matrix.ndim == 2:
+        return np.asarray(matrix @ values)
+    wide = np.broadcast_to(values, (values.shape[0], matrix.shape[0]))
+    return np.asarray(np.einsum("mrc,cm->rm", matrix, wide))
+
+
+def stack_networks(networks: Sequence[Network]) -> Network:
+    """Several sizings of one circuit as the instances of one network, for the node equations only.
+
+    Equations and parameters become one per instance; all other fields are the first network's.
+    """
+    first = networks[0]
+    return replace(
+        first,
+        parameters=DeviceParameters(
+            *(
+                np.concatenate(
+                    [getattr(network.parameters, name) for network in networks], axis=1
+                )
+                for name in DeviceParameters.__dataclass_fields__
+            )
+        ),
+        from_current=np.stack([network.from_current for network in networks]),
+        from_voltage=np.stack([network.from_voltage for network in networks]),
+        from_slope=np.stack([network.from_slope for network in networks]),
+    )
 
 
 def with_driven(free: Floats, driven: Floats) -> Floats:

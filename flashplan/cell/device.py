@@ -64,7 +64,7 @@ def channel_state(
     )
     saturated = at_source / to_saturation
     full = p.thermal_voltage * (2.0 * (at_source - saturated) + np.log(to_saturation))
-    ratio = across / full
+    ratio = across / (full + 1e-9)  # full is 0 only at charges that no circuit reaches
     ratio *= ratio
     effective = across / np.sqrt(np.sqrt(1.0 + ratio * ratio))
     at_drain = inversion_charge((over - effective) / p.thermal_voltage)

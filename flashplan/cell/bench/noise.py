@@ -107,7 +107,7 @@ def noisy_decisions(
     state = np.repeat(start, instances, axis=1)
     plus, minus = output_rows(network)
     failed = np.zeros(instances, dtype=bool)
-    time, length = 0.0, setup.edge / 2.0 + setup.decision_time
+    time, length = -setup.lead, setup.edge / 2.0 + setup.decision_time
 
     def rates(when: float, free: Floats, noise: Floats | None) -> tuple[Floats, Floats]:
         driven, driven_slope = drive(when)

@@ -82,9 +82,7 @@ def pulse_response(
     )
     output = path.voltages[:, _out(setup)]
     half = setup.network.supply / 2.0
-    delay = np.array(
-        [_rise(path.time, output[:, k], half) for k in range(high.size)]
-    )
+    delay = np.array([_rise(path.time, output[:, k], half) for k in range(high.size)])
     peak = output.max(axis=0)
     return PulseResponse(
         high,
@@ -124,9 +122,7 @@ def chatter(
 
     path = follow(setup, waveform, instances, time, [], 0.25 / bandwidth)
     high = path.voltages[:, _out(setup)] > setup.network.supply / 2.0
-    return Chatter(
-        (high[1:] != high[:-1]).sum(axis=0), int(path.failed.sum())
-    )
+    return Chatter((high[1:] != high[:-1]).sum(axis=0), int(path.failed.sum()))
 
 
 def follow(

@@ -85,7 +85,7 @@ def measure_regeneration(setup: Setup, time: float) -> Regeneration:
     (rate, height), residual = np.polyfit(x, y, 1), 0.0
     residual = float(np.sqrt(np.mean((y - rate * x - height) ** 2)))
     error = residual / (np.std(x) * np.sqrt(max(x.size - 2, 1)))
-    before = (when <= x[0]) & (when >= 0)
+    before = (when <= x[0]) & (when > -setup.lead)
     ratio = np.abs(output[before]) / np.exp(rate * when[before] + height)
     off = np.flatnonzero(np.abs(ratio - 1.0) > _START)
     begins = (
@@ -104,7 +104,7 @@ def measure_regeneration(setup: Setup, time: float) -> Regeneration:
 def first_crossing(time: Floats, values: Floats, level: float) -> float:
     """First time at which |values| reaches a level, interpolated in the logarithm; NaN if it never does."""
     size = np.abs(values)
-    reached = np.flatnonzero((size >= level) & (time > 0))
+    reached = np.flatnonzero(size >= level)
     if not reached.size or reached[0] == 0:
         return float("nan")
     k = int(reached[0])

@@ -21,7 +21,8 @@ class Setup:
     """common_mode: voltage of the reference input; edge: rise time of the clock; bias: voltage of the node "bias".
 
     decision_time: from the clock's mid-edge to the end of the decision; reset_time: the other part of the period.
-    tolerance: local error per step as a part of the supply.
+    tolerance: local error per step as a part of the supply; lead: how long before the clock's edge the input is there,
+    for cells whose first stage follows it all the time.
     """
 
     network: Network
@@ -31,6 +32,7 @@ class Setup:
     reset_time: float
     bias: float = 0.0
     tolerance: float = 1e-4
+    lead: float = 0.0
 
     @property
     def valid_level(self) -> float:
@@ -156,8 +158,8 @@ def decide(
         parameters,
         drive,
         start,
-        (0.0, half + length),
-        breaks,
+        (-setup.lead, half + length),
+        [0.0, *breaks],
         decided,
     )
     return Decision(

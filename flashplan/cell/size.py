@@ -1,0 +1,396 @@
+"""Sizing a comparator against a budget: least energy, then area, inside every limit, confirmed by the transient bench."""
+
+import math
+from collections.abc import Mapping
+from typing import Any, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from flashplan.cell.process import Process, choose_process, load_process
+from flashplan.cell.sized import Origin, Relaxation, SizedCell, SizedDevice
+from flashplan.cell.sizing.clocked import (
+    CLOCKED,
+    Topology,
+    bounds,
+    first_guess,
+    require_supply,
+    setup_of,
+    variables,
+)
+from flashplan.cell.sizing.conditions import Conditions, conditions_for
+from flashplan.cell.sizing.confirm import Measured, measure_quick, measure_whole
+from flashplan.cell.sizing.model import ModelValues, evaluate, tau_at_gain
+from flashplan.cell.sizing.optimise import Optimum, optimise
+from flashplan.errors import InputError
+from flashplan.plan.datasheet import Datasheet
+from flashplan.plan.model import Plan
+
+Floats = NDArray[np.float64]
+
+_MARGIN = 0.93  # part of a limit aimed at: what the search's tolerance and the bench's scatter may take back
+_ROUNDS = 3  # of correcting the model by the bench, at most
+_AGREED = (
+    0.03  # relative change of a correction below which the model needs no further round
+)
+_BINDING = 0.05  # of a limit's logarithm, within which it counts as reached
+_DRAWS = 400  # mismatch draws that confirm the offset
+_TOLERANCE = 1e-6
+
+# The plan's key that gives a limit more room, by line.
+_GOALS = {
+    "offset_sigma": "goals.dnl_lsb, goals.inl_lsb, goals.yield or converter.full_scale",
+    "noise_sigma": "goals.enob or allocation.noise",
+    "hysteresis": "goals.enob or allocation.hysteresis",
+    "skew_sigma": "goals.enob, allocation.skew or converter.input_frequency",
+    "regeneration_tau": "converter.latch_stages, goals.word_error_rate or converter.decision_fraction",
+    "delay": "allocation.delay_fraction or converter.decision_fraction",
+    "kickback_charge": "ladder.total_resistance, ladder.tap_capacitance or allocation.systematic_lsb",
+    "input_capacitance": "converter.source_resistance or allocation.input_droop_db",
+}
+_SIZED_LINES = tuple(_GOALS)
+
+
+class Progress(Protocol):
+    """What is told of the way: `total` steps, some of them found done, each one reported."""
+
+    def begin(self, total: int, finished: int) -> None:
+        """The work starts."""
+
+    def advance(self) -> None:
+        """One more step is done."""
+
+    def end(self) -> None:
+        """The work is over."""
+
+
+def size_cell(
+    plan: Plan,
+    limits: Any,
+    topology: str = "double-tail",
+    process: Process | str | None = None,
+    progress: Progress | None = None,
+    draws: int = _DRAWS,
+) -> SizedCell:
+    """Size a clocked comparator for a plan and measure what came out.
+
+    limits: a budget (anything whose `lines` maps names to lines with a `limit`) or a mapping of names to limits in SI;
+    None is no limit. process: a description, the name or file of one, or None for the shipped one whose supply is
+    nearest to the plan's. draws: mismatch draws that confirm the offset.
+
+    The linearised model is minimised for energy, then area, inside 93 % of every limit; the bench measures that cell
+    and corrects the model by the ratio, up to three times. Seeds follow from the plan's, so that a run repeats.
+    Raises InputError for a topology or process that is not known or cannot work at the plan's supply.
+    """
+    if topology not in CLOCKED:
+        raise InputError(
+            f"topology {topology!r} cannot be sized; those that can are {', '.join(CLOCKED)}",
+            f"{plan.source}: comparator.topology",
+        )
+    kind = CLOCKED[topology]
+    chosen = (
+        choose_process(plan.converter.supply)
+        if process is None
+        else process
+        if isinstance(process, Process)
+        else load_process(process)
+    )
+    conditions = conditions_for(plan, chosen)
+    require_supply(kind, conditions)
+    allowed = _limits(limits)
+    if progress is not None:
+        progress.begin(_ROUNDS + 2, 0)
+    try:
+        return _sized(plan, kind, conditions, allowed, progress, draws)
+    finally:
+        if progress is not None:
+            progress.end()
+
+
+def _limits(limits: Any) -> dict[str, float]:
+    lines = getattr(limits, "lines", None)
+    given: Mapping[str, Any] = (
+        limits if lines is None else {name: line.limit for name, line in lines.items()}
+    )
+    return {
+        name: float(given[name])
+        for name in _SIZED_LINES
+        if given.get(name) is not None and math.isfinite(given[name])
+    }
+
+
+def _sized(
+    plan: Plan,
+    kind: Topology,
+    conditions: Conditions,
+    allowed: dict[str, float],
+    progress: Progress | None,
+    draws: int,
+) -> SizedCell:
+    seed = plan.array.seed
+    x = first_guess(kind, conditions)
+    correction: dict[str, float] = {}
+    search = _Search(plan, kind, conditions, allowed)
+    for number in range(_ROUNDS):
+        optimum = search.run(
+            x,
+            correction,
+            evaluations=20 if number == 0 else 10,
+            reach=2.5 if number == 0 else 0.7,
+        )
+        x = optimum.x
+        values = evaluate(kind, conditions, [x])
+        setup = setup_of(kind, conditions, x)
+        quick = _measure(setup, values, seed, kind, conditions)
+        _step(progress)
+        new = _corrections(quick, values, correction)
+        change = max(
+            (abs(math.log(new[k] / correction.get(k, 1.0))) for k in new), default=0.0
+        )
+        correction = new
+        if change < _AGREED:
+            break
+    tail = "pair" if kind.static else "tail"
+    whole = measure_whole(setup, quick, values.linear, tail, draws, seed)
+    _step(progress)
+    broken = _broken(plan, allowed, whole.values)
+    relaxations = search.relaxations(x, correction, broken, whole.values)
+    _step(progress)
+    return SizedCell(
+        topology=kind.name,
+        process=conditions.process.name,
+        met=not broken,
+        datasheet=Datasheet(**whole.values),
+        origins=_with_conditions(whole.origins),
+        devices=_devices(kind, conditions, optimum, search.names, values, whole),
+        parameters={"resistance": math.exp(x[-1])} if kind.static else {},
+        relaxations=tuple(relaxations),
+        failed_instances=whole.failed,
+        notes=(
+            f"inputs rest at {conditions.common_mode:.3g} V, where the ladder's taps are taken to lie",
+            f"clock edge {conditions.edge * 1e12:.3g} ps, load {conditions.load * 1e15:.3g} fF on each output",
+            "skew is the cell's own; the clock tree adds its own",
+        ),
+    )
+
+
+class _Search:
+    """The optimiser's view of one sizing task: names of the limits and the model in logarithms over them."""
+
+    def __init__(
+        self,
+        plan: Plan,
+        kind: Topology,
+        conditions: Conditions,
+        allowed: dict[str, float],
+    ) -> None:
+        self.plan, self.kind, self.conditions = plan, kind, conditions
+        self.allowed = allowed
+        own = ["reset", *(["headroom"] if kind.static else [])]
+        self.names = [
+            name for name in allowed if name != "hysteresis" and allowed[name] > 0
+        ] + own
+
+    def run(
+        self,
+        x: Floats,
+        correction: dict[str, float],
+        evaluations: int,
+        reach: float,
+        without: str | None = None,
+    ) -> Optimum:
+        """Best sizes from x on; `without` turns one limit into the objective."""
+
+        def model(points: list[Floats]) -> tuple[Floats, Floats]:
+            values = evaluate(self.kind, self.conditions, points)
+            excess = self._excess(values, correction)
+            objective = np.log(values.energy) + 0.02 * np.log(values.area)
+            if without is not None:
+                row = self.names.index(without)
+                objective = 3.0 * excess[row] + 0.02 * objective
+                excess = np.delete(excess, row, axis=0)
+            return objective, excess
+
+        return optimise(
+            model, x, bounds(self.kind, self.conditions), evaluations, reach
+        )
+
+    def _excess(self, values: ModelValues, correction: dict[str, float]) -> Floats:
+        rows = []
+        for name in self.names:
+            value = values.limited[name] * correction.get(name, 1.0)
+            limit = self.allowed.get(name, 1.0)
+            if name == "regeneration_tau":
+                gain = values.gain * correction.get("regeneration_gain", 1.0)
+                value = _tau_as_judged(self.plan, value, gain)
+            margin = _MARGIN if name in self.allowed else 1.0
+            rows.append(np.log(value / (margin * limit)))
+        return np.array(rows)
+
+    def relaxations(
+        self,
+        x: Floats,
+        correction: dict[str, float],
+        broken: dict[str, float],
+        measured: dict[str, float],
+    ) -> list[Relaxation]:
+        """For each limit that is broken: what the cell at hand needs; for the two worst: what each would need alone."""
+        found = [
+            Relaxation(name, _GOALS[name], self.allowed[name], value, alone=False)
+            for name, value in broken.items()
+        ]
+        worst = sorted(
+            (r for r in found if r.line in self.names), key=lambda r: -r.factor
+        )[:2]
+        for item in worst:
+            optimum = self.run(x, correction, 12, 2.5, without=item.line)
+            if optimum.excess.max() > 0.01:
+                continue  # the others cannot all be met either
+            values = evaluate(self.kind, self.conditions, [optimum.x])
+            row = self.names.index(item.line)
+            excess = float(self._excess(values, correction)[row, 0])
+            found.append(
+                Relaxation(
+                    item.line,
+                    item.goal,
+                    item.limit,
+                    item.limit * _MARGIN * math.exp(excess),
+                    alone=True,
+                )
+            )
+        return found
+
+
+def _tau_as_judged(plan: Plan, tau: Floats, gain: Floats) -> Floats:
+    """tau as the budget would see it, whose limit was derived with the plan's own gain or 1."""
+    assumed = plan.datasheet.regeneration_gain or 1.0
+    return tau_at_gain(
+        tau,
+        gain,
+        assumed,
+        plan.converter.supply / 2.0,
+        plan.lsb,
+        plan.goals.word_error_rate,
+    )
+
+
+def _measure(
+    setup: Any,
+    values: ModelValues,
+    seed: int,
+    kind: Topology,
+    conditions: Conditions,
+) -> Measured:
+    try:
+        return measure_quick(setup, float(values.linear.noise_sigma[0]), seed)
+    except ValueError as error:
+        raise InputError(
+            f"{kind.name} in {conditions.process.name} does not decide under this clock: {error}",
+            "converter.sample_rate",
+        ) from None
+
+
+def _corrections(
+    quick: Measured, values: ModelValues, before: dict[str, float]
+) -> dict[str, float]:
+    """Measured over modelled, by name; noise only where the model lies outside the measurement's interval."""
+    found = dict(before)
+    for name in ("regeneration_tau", "delay", "skew_sigma", "kickback_charge"):
+        found[name] = quick.values[name] / float(values.limited[name][0])
+    found["regeneration_gain"] = quick.values["regeneration_gain"] / float(
+        values.gain[0]
+    )
+    noise = quick.origins["noise_sigma"]
+    modelled = float(values.linear.noise_sigma[0])
+    if noise.low is not None and noise.high is not None:
+        inside = noise.low <= modelled <= noise.high
+        found["noise_sigma"] = 1.0 if inside else quick.values["noise_sigma"] / modelled
+    return {name: value for name, value in found.items() if value > 0}
+
+
+def _broken(
+    plan: Plan, allowed: dict[str, float], values: dict[str, float]
+) -> dict[str, float]:
+    """Limits that the measured cell does not meet, with what it has; tau as the budget judges it at the cell's gain."""
+    found = {}
+    for name, limit in allowed.items():
+        value = values[name]
+        if name == "regeneration_tau":
+            value = float(
+                _tau_as_judged(
+                    plan, np.array(value), np.array(values["regeneration_gain"])
+                )
+            )
+        if value > limit * (1 + _TOLERANCE):
+            found[name] = value
+    return found
+
+
+def _devices(
+    kind: Topology,
+    conditions: Conditions,
+    optimum: Optimum,
+    names: list[str],
+    values: ModelValues,
+    whole: Measured,
+) -> tuple[SizedDevice, ...]:
+    parts = setup_of(kind, conditions, optimum.x).network.circuit.devices
+    linear = values.linear
+    found = []
+    for k, group in enumerate(kind.groups):
+        rows = [i for i, d in enumerate(parts) if _group(d.name, kind) == group]
+        found.append(
+            SizedDevice(
+                name=group,
+                count=len(rows),
+                width=parts[rows[0]].width,
+                length=parts[rows[0]].length,
+                binds=_binds(k, optimum, names, kind, conditions),
+                offset_sigma=float(np.hypot.reduce(linear.offset_by_device[rows, 0])),
+                noise_sigma=float(np.hypot.reduce(linear.noise_by_device[rows, 0])),
+                energy=float(whole.cycle.device_energy[rows].sum()),
+            )
+        )
+    return tuple(found)
+
+
+def _group(device: str, kind: Topology) -> str:
+    """A device's group: the longest group name that its own name begins with."""
+    return max((g for g in kind.groups if device.startswith(g)), key=len)
+
+
+def _binds(
+    k: int,
+    optimum: Optimum,
+    names: list[str],
+    kind: Topology,
+    conditions: Conditions,
+) -> str:
+    """The reached limit that a narrower device would break most; else the least width, else energy alone."""
+    low = bounds(kind, conditions)[k][0]
+    if optimum.x[k] < low + 1e-3:
+        return "minimum width"
+    reached = [
+        i
+        for i in range(len(names))
+        if optimum.excess[i] > optimum.excess.max() - _BINDING
+        and optimum.excess[i] > -_BINDING
+    ]
+    strongest = min(reached, key=lambda i: optimum.slopes[i, k], default=None)
+    if strongest is None or optimum.slopes[strongest, k] > -1e-2:
+        return "energy"
+    return names[strongest]
+
+
+def _with_conditions(origins: dict[str, Origin]) -> dict[str, Origin]:
+    return dict(origins)
+
+
+def _step(progress: Progress | None) -> None:
+    if progress is not None:
+        progress.advance()
+
+
+def free_sizes(topology: str) -> tuple[str, ...]:
+    """Names of what is sized in a topology."""
+    return variables(CLOCKED[topology])

@@ -1,0 +1,90 @@
+"""The search for sizes: least energy, then area, inside every limit."""
+
+from collections.abc import Callable
+from contextlib import suppress
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.optimize import minimize
+
+Floats = NDArray[np.float64]
+
+# Objective and excesses ln(value / limit) of several points: (points,), (limits, points).
+Model = Callable[[list[Floats]], tuple[Floats, Floats]]
+
+_STEP = 0.02  # of a logarithm, for the difference quotients; far above what the model's step control jitters by
+_PENALTY = 30.0  # of an excess against ln(energy): an exact penalty as long as multipliers stay below it
+
+
+@dataclass(frozen=True)
+class Optimum:
+    """x at the best point; excess of each limit there (limits,); slopes of the excesses (limits, variables)."""
+
+    x: Floats
+    objective: float
+    excess: Floats
+    slopes: Floats
+    evaluations: int
+
+
+def optimise(
+    model: Model,
+    start: Floats,
+    bounds: list[tuple[float, float]],
+    evaluations: int = 20,
+    reach: float = 1.5,
+) -> Optimum:
+    """Minimise the objective with all excesses at most s, and s (at least 0) at a price that makes it 0 if it can be.
+
+    Sequential quadratic programming (SLSQP); one call of the model gives a point and all its difference quotients.
+    evaluations: the most calls of the model. reach: how far a logarithm may move from the start, so that the search stays where the model was corrected.
+    """
+    size = start.size
+    low = np.maximum([b[0] for b in bounds], start - reach)
+    high = np.minimum([b[1] for b in bounds], start + reach)
+    kept: dict[bytes, tuple[float, Floats, Floats, Floats]] = {}
+
+    def at(x: Floats) -> tuple[float, Floats, Floats, Floats]:
+        key = x.tobytes()
+        if key not in kept:
+            if len(kept) >= evaluations:
+                raise _Enough
+            points = [x] + [x + _STEP * unit for unit in np.eye(size)]
+            value, excess = model(points)
+            kept[key] = (
+                float(value[0]),
+                (value[1:] - value[0]) / _STEP,
+                excess[:, 0],
+                (excess[:, 1:] - excess[:, :1]) / _STEP,
+            )
+        return kept[key]
+
+    first = at(np.clip(start, low, high))
+    slack = max(0.0, float(first[2].max()))
+    with suppress(_Enough):
+        minimize(
+            lambda z: at(z[:-1])[0] + _PENALTY * z[-1],
+            np.append(np.clip(start, low, high), slack),
+            jac=lambda z: np.append(at(z[:-1])[1], _PENALTY),
+            method="SLSQP",
+            bounds=[*zip(low, high, strict=True), (0.0, None)],
+            constraints={
+                "type": "ineq",
+                "fun": lambda z: z[-1] - at(z[:-1])[2],
+                "jac": lambda z: np.hstack(
+                    [-at(z[:-1])[3], np.ones((first[2].size, 1))]
+                ),
+            },
+            options={"maxiter": evaluations, "ftol": 2e-3},
+        )
+    # The solver may end on a point worse than one it has seen: what counts is the merit itself.
+    best = min(
+        kept, key=lambda k: kept[k][0] + _PENALTY * max(0.0, float(kept[k][2].max()))
+    )
+    objective, _, excess, slopes = kept[best]
+    return Optimum(np.frombuffer(best).copy(), objective, excess, slopes, len(kept))
+
+
+class _Enough(Exception):
+    """The search has spent its evaluations."""
