@@ -23,7 +23,7 @@ from flashplan.cell.device_noise import (
 Floats = NDArray[np.float64]
 
 _PROBE = 1e-5  # V, of the difference quotients
-_RESTING = 2e-3  # part of the supply that no node moves by in a step once the common mode has settled
+_RESTING = 0.02  # part of the supply that no node moves by in a twentieth of the decision once it has settled
 _EARLIER = 12  # intervals of the reset before the decision, each twice as long as the one after it
 _WITHIN = 0.1  # regeneration has started once the response keeps within this part of the exponential
 
@@ -112,12 +112,16 @@ def _balanced_decision(setup: Setup) -> tuple[Floats, Floats, Floats]:
     sizings = network.from_current.shape[0]
     start = reset_state(setup, network.parameters, sizings)
     drive, breaks = clock_drive(setup, np.zeros(1), 0.0, None)
-    last = [start]
+    before = [(0.0, start)]
 
     def resting(time: float, free: Floats) -> bool:
-        moved = float(np.abs(free - last[0]).max())
-        last[0] = free
-        return time > 2.0 * setup.edge and moved < _RESTING * network.supply
+        passed, moved = time - before[0][0], np.abs(free - before[0][1]).max()
+        before[0] = (time, free)
+        window = setup.decision_time / 20.0
+        return bool(
+            time > 2.0 * setup.edge
+            and moved / passed * window < _RESTING * network.supply
+        )
 
     path = run(
         setup,

@@ -2,13 +2,19 @@
 
 import math
 from collections.abc import Mapping
+from pathlib import Path
 from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
-from flashplan.cell.process import Process, choose_process, load_process
-from flashplan.cell.sized import Origin, Relaxation, SizedCell, SizedDevice
+from flashplan.cell.process import (
+    Process,
+    choose_process,
+    generic_names,
+    load_process,
+)
+from flashplan.cell.sized import Relaxation, SizedCell, SizedDevice
 from flashplan.cell.sizing.clocked import (
     CLOCKED,
     Topology,
@@ -16,7 +22,6 @@ from flashplan.cell.sizing.clocked import (
     first_guess,
     require_supply,
     setup_of,
-    variables,
 )
 from flashplan.cell.sizing.conditions import Conditions, conditions_for
 from flashplan.cell.sizing.confirm import Measured, measure_quick, measure_whole
@@ -29,6 +34,7 @@ from flashplan.plan.model import Plan
 Floats = NDArray[np.float64]
 
 _MARGIN = 0.93  # part of a limit aimed at: what the search's tolerance and the bench's scatter may take back
+_SEARCH = ((18, 2.5), (8, 0.7))  # evaluations and reach: first round, later ones
 _ROUNDS = 3  # of correcting the model by the bench, at most
 _AGREED = (
     0.03  # relative change of a correction below which the model needs no further round
@@ -36,6 +42,7 @@ _AGREED = (
 _BINDING = 0.05  # of a limit's logarithm, within which it counts as reached
 _DRAWS = 400  # mismatch draws that confirm the offset
 _TOLERANCE = 1e-6
+_AREA_WEIGHT = 0.02  # against ln(energy): area decides only between equals
 
 # The plan's key that gives a limit more room, by line.
 _GOALS = {
@@ -67,7 +74,7 @@ class Progress(Protocol):
 def size_cell(
     plan: Plan,
     limits: Any,
-    topology: str = "double-tail",
+    topology: str | None = None,
     process: Process | str | None = None,
     progress: Progress | None = None,
     draws: int = _DRAWS,
@@ -75,36 +82,44 @@ def size_cell(
     """Size a clocked comparator for a plan and measure what came out.
 
     limits: a budget (anything whose `lines` maps names to lines with a `limit`) or a mapping of names to limits in SI;
-    None is no limit. process: a description, the name or file of one, or None for the shipped one whose supply is
-    nearest to the plan's. draws: mismatch draws that confirm the offset.
+    None is no limit. topology, process: None takes the plan's own [comparator] keys, or else double-tail and the shipped
+    process whose supply is nearest to the plan's; a process may be a description, or the name or file of one. draws: mismatch draws that confirm the offset.
 
     The linearised model is minimised for energy, then area, inside 93 % of every limit; the bench measures that cell
     and corrects the model by the ratio, up to three times. Seeds follow from the plan's, so that a run repeats.
     Raises InputError for a topology or process that is not known or cannot work at the plan's supply.
     """
-    if topology not in CLOCKED:
+    name = topology or plan.comparator.topology or "double-tail"
+    if name not in CLOCKED:
         raise InputError(
-            f"topology {topology!r} cannot be sized; those that can are {', '.join(CLOCKED)}",
+            f"topology {name!r} cannot be sized; those that can are {', '.join(CLOCKED)}",
             f"{plan.source}: comparator.topology",
         )
-    kind = CLOCKED[topology]
-    chosen = (
-        choose_process(plan.converter.supply)
-        if process is None
-        else process
-        if isinstance(process, Process)
-        else load_process(process)
-    )
+    kind = CLOCKED[name]
+    chosen = _process(plan, process)
     conditions = conditions_for(plan, chosen)
     require_supply(kind, conditions)
     allowed = _limits(limits)
     if progress is not None:
-        progress.begin(_ROUNDS + 2, 0)
+        progress.begin(_ROUNDS + 1, 0)
     try:
         return _sized(plan, kind, conditions, allowed, progress, draws)
     finally:
         if progress is not None:
             progress.end()
+
+
+def _process(plan: Plan, given: Process | str | None) -> Process:
+    if isinstance(given, Process):
+        return given
+    if given is not None:
+        return load_process(given)
+    own = plan.comparator.process
+    if own is None:
+        return choose_process(plan.converter.supply)
+    return load_process(
+        own if own in generic_names() else Path(plan.source).parent / own
+    )
 
 
 def _limits(limits: Any) -> dict[str, float]:
@@ -135,8 +150,8 @@ def _sized(
         optimum = search.run(
             x,
             correction,
-            evaluations=20 if number == 0 else 10,
-            reach=2.5 if number == 0 else 0.7,
+            evaluations=_SEARCH[number > 0][0],
+            reach=_SEARCH[number > 0][1],
         )
         x = optimum.x
         values = evaluate(kind, conditions, [x])
@@ -154,17 +169,18 @@ def _sized(
     whole = measure_whole(setup, quick, values.linear, tail, draws, seed)
     _step(progress)
     broken = _broken(plan, allowed, whole.values)
-    relaxations = search.relaxations(x, correction, broken, whole.values)
-    _step(progress)
     return SizedCell(
         topology=kind.name,
         process=conditions.process.name,
         met=not broken,
         datasheet=Datasheet(**whole.values),
-        origins=_with_conditions(whole.origins),
+        origins=whole.origins,
         devices=_devices(kind, conditions, optimum, search.names, values, whole),
         parameters={"resistance": math.exp(x[-1])} if kind.static else {},
-        relaxations=tuple(relaxations),
+        relaxations=tuple(
+            Relaxation(name, _GOALS[name], allowed[name], value)
+            for name, value in broken.items()
+        ),
         failed_instances=whole.failed,
         notes=(
             f"inputs rest at {conditions.common_mode:.3g} V, where the ladder's taps are taken to lie",
@@ -197,19 +213,13 @@ class _Search:
         correction: dict[str, float],
         evaluations: int,
         reach: float,
-        without: str | None = None,
     ) -> Optimum:
-        """Best sizes from x on; `without` turns one limit into the objective."""
+        """Best sizes from x on, with the model's values times their corrections."""
 
         def model(points: list[Floats]) -> tuple[Floats, Floats]:
             values = evaluate(self.kind, self.conditions, points)
-            excess = self._excess(values, correction)
-            objective = np.log(values.energy) + 0.02 * np.log(values.area)
-            if without is not None:
-                row = self.names.index(without)
-                objective = 3.0 * excess[row] + 0.02 * objective
-                excess = np.delete(excess, row, axis=0)
-            return objective, excess
+            objective = np.log(values.energy) + _AREA_WEIGHT * np.log(values.area)
+            return objective, self._excess(values, correction)
 
         return optimise(
             model, x, bounds(self.kind, self.conditions), evaluations, reach
@@ -226,39 +236,6 @@ class _Search:
             margin = _MARGIN if name in self.allowed else 1.0
             rows.append(np.log(value / (margin * limit)))
         return np.array(rows)
-
-    def relaxations(
-        self,
-        x: Floats,
-        correction: dict[str, float],
-        broken: dict[str, float],
-        measured: dict[str, float],
-    ) -> list[Relaxation]:
-        """For each limit that is broken: what the cell at hand needs; for the two worst: what each would need alone."""
-        found = [
-            Relaxation(name, _GOALS[name], self.allowed[name], value, alone=False)
-            for name, value in broken.items()
-        ]
-        worst = sorted(
-            (r for r in found if r.line in self.names), key=lambda r: -r.factor
-        )[:2]
-        for item in worst:
-            optimum = self.run(x, correction, 12, 2.5, without=item.line)
-            if optimum.excess.max() > 0.01:
-                continue  # the others cannot all be met either
-            values = evaluate(self.kind, self.conditions, [optimum.x])
-            row = self.names.index(item.line)
-            excess = float(self._excess(values, correction)[row, 0])
-            found.append(
-                Relaxation(
-                    item.line,
-                    item.goal,
-                    item.limit,
-                    item.limit * _MARGIN * math.exp(excess),
-                    alone=True,
-                )
-            )
-        return found
 
 
 def _tau_as_judged(plan: Plan, tau: Floats, gain: Floats) -> Floats:
@@ -382,15 +359,6 @@ def _binds(
     return names[strongest]
 
 
-def _with_conditions(origins: dict[str, Origin]) -> dict[str, Origin]:
-    return dict(origins)
-
-
 def _step(progress: Progress | None) -> None:
     if progress is not None:
         progress.advance()
-
-
-def free_sizes(topology: str) -> tuple[str, ...]:
-    """Names of what is sized in a topology."""
-    return variables(CLOCKED[topology])

@@ -2,12 +2,12 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import Any
+from typing import Any, get_args
 
 import tomli_w
 
 from flashplan.plan.datasheet import Datasheet
-from flashplan.plan.fields import unit_of
+from flashplan.plan.fields import Unit
 from flashplan.quantity import show
 
 
@@ -39,17 +39,15 @@ class SizedDevice:
 
 @dataclass(frozen=True)
 class Relaxation:
-    """A limit that no size meets together with the others: what is allowed, what would be needed, and their ratio.
+    """A limit that no size was found to meet together with the others: what is allowed and what the cell needs.
 
-    alone: needed if this limit gives way and all others hold; False: needed at the best compromise of all of them.
-    goal: the plan's key that moves it.
+    goal: the plan's keys that move it.
     """
 
     line: str
     goal: str
     limit: float
     needed: float
-    alone: bool
 
     @property
     def factor(self) -> float:
@@ -104,7 +102,6 @@ class SizedCell:
                     "limit": r.limit,
                     "needed": r.needed,
                     "factor": r.factor if r.limit > 0 else None,
-                    "alone": r.alone,
                 }
                 for r in self.relaxations
             ],
@@ -155,5 +152,10 @@ def datasheet_toml(sized: SizedCell) -> str:
 
 
 def _text(name: str, value: float) -> str | float:
-    unit = unit_of(Datasheet, name)
-    return value if unit in ("ratio", "") else show(value, unit, 6)
+    unit = next(
+        item.unit
+        for kind in get_args(Datasheet.model_fields[name].annotation)
+        for item in getattr(kind, "__metadata__", ())
+        if isinstance(item, Unit)
+    )
+    return value if unit == "ratio" else show(value, unit, 6)

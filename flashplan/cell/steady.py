@@ -3,7 +3,12 @@
 import numpy as np
 from numpy.typing import NDArray
 
-from flashplan.cell.circuit import Network, device_currents, with_driven
+from flashplan.cell.circuit import (
+    Network,
+    apply_matrix,
+    device_currents,
+    with_driven,
+)
 from flashplan.cell.device import DeviceParameters
 
 Floats = NDArray[np.float64]
@@ -18,11 +23,12 @@ def steady_state(
     driven: Floats,
     start: Floats,
     first_step: float,
+    duration: float = np.inf,
     limit: int = 800,
 ) -> tuple[Floats, NDArray[np.bool_]]:
     """Free nodes at rest with constant driven nodes: (voltages (free, instances), failed (instances,)).
 
-    driven: (driven, instances); start: (free, instances); first_step: s, short against the circuit's time constants.
+    duration: s, after which an instance is taken as it is, at rest or not. driven: (driven, instances); start: (free, instances); first_step: s, short against the circuit's time constants.
     Linearly implicit Euler steps whose length grows as the rates fall: the path first follows the circuit's own
     transient, so that of several stable states the one is found that the circuit would fall into from `start`.
     An instance that has not come to rest after `limit` steps counts as failed.
@@ -34,6 +40,7 @@ def steady_state(
     step = np.full(instances, first_step)
     limit_move = 0.05 * network.supply
     settled = np.zeros(instances, dtype=bool)
+    elapsed = np.zeros(instances)
     rates = _rates(network, parameters, driven, state)
     size = np.abs(rates).max(axis=0)
     for _ in range(limit):
@@ -51,13 +58,16 @@ def steady_state(
         onward = (move * rates).sum(axis=0) >= 0.0
         taken = onward & (largest < limit_move) & ~settled
         state = np.where(taken, state + move, state)
+        elapsed += np.where(taken, step, 0.0)
         rates = _rates(network, parameters, driven, state)
         new = np.abs(rates).max(axis=0)
         step *= np.where(taken & (new < 1.6 * size), 2.5, 0.4)
         step = np.minimum(step, 1e9 * first_step)
+        step = np.where(elapsed < duration, np.minimum(step, duration), step)
         size = new
         # Rates also fall to a crawl beside a balance; only a long step shows that nothing moves any more.
         settled |= taken & (largest < _SETTLED) & (step > 1e6 * first_step)
+        settled |= elapsed >= duration
         if settled.all():
             break
     return state, ~settled | ~np.isfinite(state).all(axis=0)
@@ -67,7 +77,9 @@ def _rates(
     network: Network, parameters: DeviceParameters, driven: Floats, free: Floats
 ) -> Floats:
     full = with_driven(free, driven)
-    rates: Floats = network.from_current @ device_currents(network, parameters, full)
+    rates = apply_matrix(
+        network.from_current, device_currents(network, parameters, full)
+    )
     if network.circuit.resistors:
-        rates += network.from_voltage @ full
+        rates += apply_matrix(network.from_voltage, full)
     return rates

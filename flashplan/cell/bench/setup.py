@@ -9,11 +9,14 @@ from numpy.typing import ArrayLike, NDArray
 from flashplan.cell.circuit import Drive, Network, slopes
 from flashplan.cell.device import DeviceParameters
 from flashplan.cell.integrate import Trajectory, integrate
+from flashplan.cell.steady import steady_state
 
 Floats = NDArray[np.float64]
 
 # A differential output this part of the supply apart has left the linear range: its sign cannot turn any more.
 DECIDED = 0.25
+
+_RESETS = 3.0  # reset times that make a long reset
 
 
 @dataclass(frozen=True)
@@ -117,9 +120,16 @@ def reset_state(setup: Setup, parameters: DeviceParameters, instances: int) -> F
         high = 0.0 if held_low and name.startswith("out") else setup.network.supply
         guess[k] = start.get(name, high)
     drive, _ = clock_drive(setup, np.zeros(1), None, None)
-    return run(setup, parameters, drive, guess, (0.0, 3.0 * setup.reset_time)).voltages[
-        -1
-    ]
+    state, failed = steady_state(
+        setup.network,
+        parameters,
+        np.repeat(drive(0.0)[0], instances, axis=1),
+        guess,
+        setup.edge / 50.0,
+        duration=_RESETS * setup.reset_time,
+    )
+    # An instance that could not be reset is no comparator: not a number, it fails in whatever run follows.
+    return np.where(failed, np.nan, state)
 
 
 def decide(

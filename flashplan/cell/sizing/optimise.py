@@ -35,8 +35,10 @@ def optimise(
     evaluations: int = 20,
     reach: float = 1.5,
 ) -> Optimum:
-    """Minimise the objective with all excesses at most s, and s (at least 0) at a price that makes it 0 if it can be.
+    """Minimise the objective with each excess at most its slack, and slacks (at least 0) at a price.
 
+    The price makes every slack 0 if that can be; where it cannot, the sum of slacks tends to leave few limits broken
+    instead of all of them a little, which tells a designer what stands in the way.
     Sequential quadratic programming (SLSQP); one call of the model gives a point and all its difference quotients.
     evaluations: the most calls of the model. reach: how far a logarithm may move from the start, so that the search stays where the model was corrected.
     """
@@ -61,27 +63,27 @@ def optimise(
         return kept[key]
 
     first = at(np.clip(start, low, high))
-    slack = max(0.0, float(first[2].max()))
+    limits = first[2].size
+
+    def merit(value: float, excess: Floats) -> float:
+        return value + _PENALTY * float(np.maximum(excess, 0.0).sum())
+
     with suppress(_Enough):
         minimize(
-            lambda z: at(z[:-1])[0] + _PENALTY * z[-1],
-            np.append(np.clip(start, low, high), slack),
-            jac=lambda z: np.append(at(z[:-1])[1], _PENALTY),
+            lambda z: at(z[:size])[0] + _PENALTY * float(z[size:].sum()),
+            np.concatenate([np.clip(start, low, high), np.maximum(first[2], 0.0)]),
+            jac=lambda z: np.append(at(z[:size])[1], np.full(limits, _PENALTY)),
             method="SLSQP",
-            bounds=[*zip(low, high, strict=True), (0.0, None)],
+            bounds=[*zip(low, high, strict=True), *([(0.0, None)] * limits)],
             constraints={
                 "type": "ineq",
-                "fun": lambda z: z[-1] - at(z[:-1])[2],
-                "jac": lambda z: np.hstack(
-                    [-at(z[:-1])[3], np.ones((first[2].size, 1))]
-                ),
+                "fun": lambda z: z[size:] - at(z[:size])[2],
+                "jac": lambda z: np.hstack([-at(z[:size])[3], np.eye(limits)]),
             },
             options={"maxiter": evaluations, "ftol": 2e-3},
         )
     # The solver may end on a point worse than one it has seen: what counts is the merit itself.
-    best = min(
-        kept, key=lambda k: kept[k][0] + _PENALTY * max(0.0, float(kept[k][2].max()))
-    )
+    best = min(kept, key=lambda k: merit(kept[k][0], kept[k][2]))
     objective, _, excess, slopes = kept[best]
     return Optimum(np.frombuffer(best).copy(), objective, excess, slopes, len(kept))
 
