@@ -74,8 +74,9 @@ def driven_levels(setup: StaticSetup, difference: Floats) -> Floats:
         if name in fixed:
             rows.append(np.full(difference.size, fixed[name]))
         else:
-            rows.append(setup.common_mode + (difference if name == "plus" else 0.0))
-    return np.stack(np.broadcast_arrays(*rows))
+            moved = difference if name == "plus" else np.zeros(difference.size)
+            rows.append(setup.common_mode + moved)
+    return np.stack(rows)
 
 
 def rest_state(
@@ -171,9 +172,7 @@ class LinearRange:
         }
 
 
-def measure_linear_range(
-    stage: Network, level: float, points: int = 101
-) -> LinearRange:
+def measure_linear_range(stage: Network, level: float, points: int = 51) -> LinearRange:
     """Linear input range of the output stage alone, by its differential gain over the level of both its inputs.
 
     stage: the network of `output_stage`; level: V at which its inputs rest in the cell. The gain is taken from its

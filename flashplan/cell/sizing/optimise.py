@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.optimize import minimize
+from scipy.optimize import Bounds, minimize
 
 Floats = NDArray[np.float64]
 
@@ -74,7 +74,10 @@ def optimise(
             np.concatenate([np.clip(start, low, high), np.maximum(first[2], 0.0)]),
             jac=lambda z: np.append(at(z[:size])[1], np.full(limits, _PENALTY)),
             method="SLSQP",
-            bounds=[*zip(low, high, strict=True), *([(0.0, None)] * limits)],
+            bounds=Bounds(
+                np.append(low, np.zeros(limits)),
+                np.append(high, np.full(limits, np.inf)),
+            ),
             constraints={
                 "type": "ineq",
                 "fun": lambda z: z[size:] - at(z[:size])[2],
