@@ -40,6 +40,7 @@ _AGREED = (
     0.03  # relative change of a correction below which the model needs no further round
 )
 _BINDING = 0.05  # of a limit's logarithm, within which it counts as reached
+_FAR = 8.0  # largest logarithm of value over limit that the search is shown
 _DRAWS = 400  # mismatch draws that confirm the offset
 _TOLERANCE = 1e-6
 _AREA_WEIGHT = 0.02  # against ln(energy): area decides only between equals
@@ -168,12 +169,13 @@ def _sized(
     tail = "pair" if kind.static else "tail"
     whole = measure_whole(setup, quick, values.linear, tail, draws, seed)
     _step(progress)
-    broken = _broken(plan, allowed, whole.values)
+    known = {k: v for k, v in whole.values.items() if math.isfinite(v)}
+    broken = _broken(plan, allowed, known)
     return SizedCell(
         topology=kind.name,
         process=conditions.process.name,
         met=not broken,
-        datasheet=Datasheet(**whole.values),
+        datasheet=Datasheet(**known),
         origins=whole.origins,
         devices=_devices(kind, conditions, optimum, search.names, values, whole),
         parameters={"resistance": math.exp(x[-1])} if kind.static else {},
@@ -234,8 +236,13 @@ class _Search:
                 gain = values.gain * correction.get("regeneration_gain", 1.0)
                 value = _tau_as_judged(self.plan, value, gain)
             margin = _MARGIN if name in self.allowed else 1.0
-            rows.append(np.log(value / (margin * limit)))
-        return np.array(rows)
+            with np.errstate(divide="ignore", invalid="ignore"):
+                rows.append(np.log(value / (margin * limit)))
+        # Sizes that make no comparator at all have no finite values; they count as far outside every limit.
+        excess: Floats = np.nan_to_num(
+            np.array(rows), nan=_FAR, posinf=_FAR, neginf=-_FAR
+        )
+        return np.clip(excess, -_FAR, _FAR)
 
 
 def _tau_as_judged(plan: Plan, tau: Floats, gain: Floats) -> Floats:
@@ -291,7 +298,7 @@ def _broken(
     """Limits that the measured cell does not meet, with what it has; tau as the budget judges it at the cell's gain."""
     found = {}
     for name, limit in allowed.items():
-        value = values[name]
+        value = values.get(name, math.inf)
         if name == "regeneration_tau":
             value = float(
                 _tau_as_judged(

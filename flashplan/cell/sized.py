@@ -1,5 +1,6 @@
 """A sized cell: datasheet with the origin of each value, devices, what binds, and what stands in the way."""
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Any, get_args
@@ -100,8 +101,8 @@ class SizedCell:
                     "line": r.line,
                     "goal": r.goal,
                     "limit": r.limit,
-                    "needed": r.needed,
-                    "factor": r.factor if r.limit > 0 else None,
+                    "needed": r.needed if math.isfinite(r.needed) else None,
+                    "factor": r.factor if math.isfinite(r.factor) else None,
                 }
                 for r in self.relaxations
             ],
@@ -134,7 +135,7 @@ def datasheet_toml(sized: SizedCell) -> str:
                 "how": origin.how,
                 **(
                     {}
-                    if origin.low is None or origin.high is None
+                    if name not in values or origin.low is None or origin.high is None
                     else {
                         "low": _text(name, origin.low),
                         "high": _text(name, origin.high),
