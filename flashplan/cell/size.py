@@ -8,6 +8,7 @@ from typing import Any, Protocol
 import numpy as np
 from numpy.typing import NDArray
 
+from flashplan.cell.bench.setup import Setup
 from flashplan.cell.process import (
     Process,
     choose_process,
@@ -157,7 +158,7 @@ def _sized(
         x = optimum.x
         values = evaluate(kind, conditions, [x])
         setup = setup_of(kind, conditions, x)
-        quick = _measure(setup, values, seed, kind, conditions)
+        quick = _measure(setup, kind, conditions)
         _step(progress)
         new = _corrections(quick, values, correction)
         change = max(
@@ -258,15 +259,9 @@ def _tau_as_judged(plan: Plan, tau: Floats, gain: Floats) -> Floats:
     )
 
 
-def _measure(
-    setup: Any,
-    values: ModelValues,
-    seed: int,
-    kind: Topology,
-    conditions: Conditions,
-) -> Measured:
+def _measure(setup: Setup, kind: Topology, conditions: Conditions) -> Measured:
     try:
-        return measure_quick(setup, float(values.linear.noise_sigma[0]), seed)
+        return measure_quick(setup)
     except ValueError as error:
         raise InputError(
             f"{kind.name} in {conditions.process.name} does not decide under this clock: {error}",
@@ -277,18 +272,13 @@ def _measure(
 def _corrections(
     quick: Measured, values: ModelValues, before: dict[str, float]
 ) -> dict[str, float]:
-    """Measured over modelled, by name; noise only where the model lies outside the measurement's interval."""
+    """Measured over modelled, by name; offset and noise need none, their linear analysis being exact to first order."""
     found = dict(before)
     for name in ("regeneration_tau", "delay", "skew_sigma", "kickback_charge"):
         found[name] = quick.values[name] / float(values.limited[name][0])
     found["regeneration_gain"] = quick.values["regeneration_gain"] / float(
         values.gain[0]
     )
-    noise = quick.origins["noise_sigma"]
-    modelled = float(values.linear.noise_sigma[0])
-    if noise.low is not None and noise.high is not None:
-        inside = noise.low <= modelled <= noise.high
-        found["noise_sigma"] = 1.0 if inside else quick.values["noise_sigma"] / modelled
     return {name: value for name, value in found.items() if value > 0}
 
 

@@ -53,7 +53,7 @@ def steady_state(
     rates = _rates(network, parameters, driven, state)
     size = np.abs(rates).max(axis=0)
     for _ in range(limit):
-        matrix = -_jacobian(network, tiled, driven, state)
+        matrix = -jacobian_of(network, tiled, driven, state)
         matrix += np.eye(free) / step[:, None, None]
         move = np.linalg.solve(matrix, rates.T[:, :, None])[:, :, 0].T
         largest = np.abs(move).max(axis=0)
@@ -88,7 +88,7 @@ def _rates(
     return rates
 
 
-def _jacobian(
+def jacobian_of(
     network: Network, tiled: DeviceParameters, driven: Floats, state: Floats
 ) -> Floats:
     """Derivatives of all rates by all free nodes, (instances, free, free), by central differences in one evaluation.

@@ -21,11 +21,14 @@ from flashplan.cell.device_noise import (
     flicker_voltage_variance,
     thermal_current_density,
 )
+from flashplan.cell.steady import jacobian_of
 
 Floats = NDArray[np.float64]
 
 # Flicker noise slower than the array's observation, and faster than the decision, does not count as noise of it.
 FLICKER_BAND = (1.0, 1e9)  # Hz
+
+_PACE = 0.7  # of the fastest node's time constant, for the fixed step
 
 
 @dataclass(frozen=True)
@@ -57,8 +60,8 @@ def measure_noise(
     """Noise from the part of decisions that go each way with the input at plus and minus `probe` V.
 
     sigma = probe / Phi^-1(P); best with a probe near sigma. Thermal noise of every device is drawn per step, flicker
-    noise as a threshold shift per decision. Steps are fixed (Heun): half the median step that the noiseless decision
-    takes under error control.
+    noise as a threshold shift per decision. Steps are fixed (Heun): 0.7 of the shortest time constant that the noiseless
+    decision passes through, at which its fastest node is still well damped.
     """
     half = decisions // 2
     difference = np.repeat([probe, -probe], half)
@@ -95,7 +98,11 @@ def noisy_decisions(
     quiet = decide(
         setup, parameters, start, float(np.abs(difference).max()), until=DECIDED
     )
-    step = float(np.median(np.diff(quiet.trajectory.time))) / 2.0
+    drive, _ = clock_drive(setup, difference, 0.0, None)
+    driven = np.stack([drive(t)[0][:, 0] for t in quiet.trajectory.time], axis=1)
+    states = np.moveaxis(quiet.trajectory.voltages[:, :, 0], 0, 1)
+    along = jacobian_of(network, parameters, driven, states)
+    step = _PACE / float(np.abs(np.linalg.eigvals(along)).max())
     instances = difference.size
     flicker = flicker_voltage_variance(
         network.flicker_factor, network.oxide_capacitance, network.area, *FLICKER_BAND
@@ -103,7 +110,6 @@ def noisy_decisions(
     shift = np.sqrt(flicker)[:, None] * generator.standard_normal(
         (flicker.size, instances)
     )
-    drive, _ = clock_drive(setup, difference, 0.0, None)
     state = np.repeat(start, instances, axis=1)
     plus, minus = output_rows(network)
     failed = np.zeros(instances, dtype=bool)
