@@ -122,6 +122,10 @@ def _reset(setup: Setup, conditions: Conditions) -> float:
         if device.name.startswith(("reset", "transfer")):
             row = nodes.index(device.drain)
             worst = max(worst, network.capacitance[row, row] * probe / float(on[k, 0]))
+    if network.circuit.resistors:  # the preamplifier forgets through its loads
+        row = nodes.index("p_a")
+        load = network.circuit.resistors[0].value
+        worst = max(worst, load * float(network.capacitance[row, row]))
     return _RESETS * worst / max(conditions.reset_time - conditions.edge, 1e-15)
 
 
