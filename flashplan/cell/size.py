@@ -36,13 +36,13 @@ Floats = NDArray[np.float64]
 
 _MARGIN = 0.93  # part of a limit aimed at: what the search's tolerance and the bench's scatter may take back
 _SEARCH = ((18, 2.5), (8, 0.7))  # evaluations and reach: first round, later ones
-_ROUNDS = 3  # of correcting the model by the bench, at most
+_ROUNDS = 2  # of correcting the model by the bench, at most
 _AGREED = (
     0.03  # relative change of a correction below which the model needs no further round
 )
 _BINDING = 0.05  # of a limit's logarithm, within which it counts as reached
 _FAR = 8.0  # largest logarithm of value over limit that the search is shown
-_DRAWS = 400  # mismatch draws that confirm the offset
+_DRAWS = 200  # mismatch draws that confirm the offset
 _TOLERANCE = 1e-6
 _AREA_WEIGHT = 0.02  # against ln(energy): area decides only between equals
 
@@ -88,7 +88,7 @@ def size_cell(
     process whose supply is nearest to the plan's; a process may be a description, or the name or file of one. draws: mismatch draws that confirm the offset.
 
     The linearised model is minimised for energy, then area, inside 93 % of every limit; the bench measures that cell
-    and corrects the model by the ratio, up to three times. Seeds follow from the plan's, so that a run repeats.
+    and corrects the model by the ratio, at most twice. Seeds follow from the plan's, so that a run repeats.
     Raises InputError for a topology or process that is not known or cannot work at the plan's supply.
     """
     name = topology or plan.comparator.topology or "double-tail"

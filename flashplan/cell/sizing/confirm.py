@@ -101,8 +101,10 @@ def measure_whole(
     offsets = offset_distribution(setup, draws, generator, predicted)
     row = setup.network.circuit.nodes.index("minus")
     values = {
-        "offset_sigma": offsets.sigma,
-        "noise_sigma": noise.sigma,
+        "offset_sigma": _confirmed(predicted, offsets.sigma, offsets.low, offsets.high),
+        "noise_sigma": _confirmed(
+            float(linear.noise_sigma[0]), noise.sigma, noise.low, noise.high
+        ),
         **quick.values,
         "input_capacitance": float(setup.network.capacitance[row, row]),
         "coupling_capacitance": coupling_capacitance(setup, pair_tail),
@@ -110,14 +112,14 @@ def measure_whole(
     }
     origins = {
         "offset_sigma": Origin(
-            f"transient bisection of {offsets.offsets.size} mismatch draws, 95 % interval;"
-            f" linear sensitivities predict {predicted * 1e3:.4g} mV",
+            f"linear analysis of the decision ({predicted * 1e3:.4g} mV), kept where it lies in the 95 % interval of"
+            f" {offsets.offsets.size} mismatch draws bisected in the transient ({offsets.sigma * 1e3:.4g} mV)",
             offsets.low,
             offsets.high,
         ),
         "noise_sigma": Origin(
-            f"stochastic transient of {noise.decisions} decisions, 95 % interval;"
-            f" linear analysis predicts {float(linear.noise_sigma[0]) * 1e3:.4g} mV",
+            f"linear analysis of the decision ({float(linear.noise_sigma[0]) * 1e3:.4g} mV), kept where it lies in the"
+            f" 95 % interval of {noise.decisions} stochastic decisions ({noise.sigma * 1e3:.4g} mV)",
             noise.low,
             noise.high,
         ),
@@ -130,3 +132,8 @@ def measure_whole(
     }
     failed = quick.failed + offsets.failed + offsets.unbracketed + noise.failed
     return Measured(values, origins, quick.cycle, failed)
+
+
+def _confirmed(predicted: float, measured: float, low: float, high: float) -> float:
+    """A prediction that the measurement's interval contains; the measurement itself otherwise."""
+    return predicted if low <= predicted <= high else measured

@@ -69,7 +69,7 @@ def optimise(
         return value + _PENALTY * float(np.maximum(excess, 0.0).sum())
 
     with suppress(_Enough):
-        minimize(
+        minimize(  # type: ignore[call-overload]  # the stubs know no constraint's jac
             lambda z: at(z[:size])[0] + _PENALTY * float(z[size:].sum()),
             np.concatenate([np.clip(start, low, high), np.maximum(first[2], 0.0)]),
             jac=lambda z: np.append(at(z[:size])[1], np.full(limits, _PENALTY)),
