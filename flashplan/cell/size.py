@@ -26,7 +26,7 @@ from flashplan.cell.sizing.clocked import (
 )
 from flashplan.cell.sizing.conditions import Conditions, conditions_for
 from flashplan.cell.sizing.confirm import Measured, measure_quick, measure_whole
-from flashplan.cell.sizing.model import ModelValues, evaluate, tau_at_gain
+from flashplan.cell.sizing.model import RESETS, ModelValues, evaluate, tau_at_gain
 from flashplan.cell.sizing.optimise import Optimum, optimise
 from flashplan.errors import InputError
 from flashplan.plan.datasheet import Datasheet
@@ -36,9 +36,12 @@ Floats = NDArray[np.float64]
 
 _MARGIN = 0.93  # part of a limit aimed at: what the search's tolerance and the bench's scatter may take back
 _SEARCH = ((18, 2.5), (8, 0.7))  # evaluations and reach: first round, later ones
-_ROUNDS = 2  # of correcting the model by the bench, at most
+_ROUNDS = 3  # of correcting the model by the bench, at most
 _AGREED = (
     0.03  # relative change of a correction below which the model needs no further round
+)
+_IMPOSSIBLE = (
+    0.05  # excess left by a search beyond which correcting the model will not help
 )
 _BINDING = 0.05  # of a limit's logarithm, within which it counts as reached
 _FAR = 8.0  # largest logarithm of value over limit that the search is shown
@@ -88,7 +91,7 @@ def size_cell(
     process whose supply is nearest to the plan's; a process may be a description, or the name or file of one. draws: mismatch draws that confirm the offset.
 
     The linearised model is minimised for energy, then area, inside 93 % of every limit; the bench measures that cell
-    and corrects the model by the ratio, at most twice. Seeds follow from the plan's, so that a run repeats.
+    and corrects the model by the ratio, at most three times. Seeds follow from the plan's, so that a run repeats.
     Raises InputError for a topology or process that is not known or cannot work at the plan's supply.
     """
     name = topology or plan.comparator.topology or "double-tail"
@@ -160,12 +163,19 @@ def _sized(
         setup = setup_of(kind, conditions, x)
         quick = _measure(setup, kind, conditions)
         _step(progress)
-        new = _corrections(quick, values, correction)
+        new = _corrections(quick, values, correction, allowed)
         change = max(
             (abs(math.log(new[k] / correction.get(k, 1.0))) for k in new), default=0.0
         )
         correction = new
-        if change < _AGREED:
+        fast = {name: allowed[name] for name in allowed if name in quick.values}
+        if change < _AGREED or (
+            number > 0
+            and (
+                optimum.excess.max() > _IMPOSSIBLE
+                or not _broken(plan, fast, quick.values)
+            )
+        ):
             break
     tail = "pair" if kind.static else "tail"
     whole = measure_whole(setup, quick, values.linear, tail, draws, seed)
@@ -270,7 +280,10 @@ def _measure(setup: Setup, kind: Topology, conditions: Conditions) -> Measured:
 
 
 def _corrections(
-    quick: Measured, values: ModelValues, before: dict[str, float]
+    quick: Measured,
+    values: ModelValues,
+    before: dict[str, float],
+    allowed: dict[str, float],
 ) -> dict[str, float]:
     """Measured over modelled, by name; offset and noise need none, their linear analysis being exact to first order."""
     found = dict(before)
@@ -279,6 +292,11 @@ def _corrections(
     found["regeneration_gain"] = quick.values["regeneration_gain"] / float(
         values.gain[0]
     )
+    limit = allowed.get("hysteresis", math.inf)
+    if quick.values["hysteresis"] > limit > 0:
+        # What is remembered falls by e per time constant: so many more are needed, and one to spare.
+        more = math.log(quick.values["hysteresis"] / limit) + 1.0
+        found["reset"] = found.get("reset", 1.0) * (1.0 + more / RESETS)
     return {name: value for name, value in found.items() if value > 0}
 
 

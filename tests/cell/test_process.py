@@ -108,7 +108,14 @@ def characterise(path, kind, process, points=30, spoil=None):
     with path.open("w", newline="") as file:
         writer = csv.writer(file)
         writer.writerow(
-            "gate_voltage current gm gds gate_capacitance junction_capacitance".split()
+            [
+                "gate_voltage",
+                "current",
+                "gm",
+                "gds",
+                "gate_capacitance",
+                "junction_capacitance",
+            ]
         )
         writer.writerows(rows.tolist())
 

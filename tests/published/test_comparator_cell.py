@@ -11,8 +11,8 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
-from flashplan.cell.bench.offset import offset_distribution, predict_offset
 from flashplan.cell.bench.noise import measure_noise
+from flashplan.cell.bench.offset import offset_distribution, predict_offset
 from flashplan.cell.bench.pulse import pulse_response
 from flashplan.cell.bench.regeneration import delay_curve, measure_regeneration
 from flashplan.cell.bench.setup import Setup

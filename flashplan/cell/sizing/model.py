@@ -16,7 +16,7 @@ from flashplan.cell.sizing.conditions import Conditions
 
 Floats = NDArray[np.float64]
 
-_RESETS = 10.0  # time constants that a node is given to forget a decision
+RESETS = 10.0  # time constants that a node is given to forget a decision
 _HEADROOM = 0.3  # part of the supply that the preamplifier's loads may drop at balance
 
 
@@ -126,7 +126,7 @@ def _reset(setup: Setup, conditions: Conditions) -> float:
         row = nodes.index("p_a")
         load = network.circuit.resistors[0].value
         worst = max(worst, load * float(network.capacitance[row, row]))
-    return _RESETS * worst / max(conditions.reset_time - conditions.edge, 1e-15)
+    return RESETS * worst / max(conditions.reset_time - conditions.edge, 1e-15)
 
 
 def _bias(setup: Setup) -> float:
