@@ -59,7 +59,7 @@ def sized(offset=4e-3):
             steps.append("end")
 
     cell = size_cell(
-        plan(), LIMITS | {"offset_sigma": offset}, draws=100, progress=Steps()
+        plan(), LIMITS | {"offset_sigma": offset}, draws=60, progress=Steps()
     )
     return cell, steps
 

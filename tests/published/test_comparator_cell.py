@@ -147,13 +147,13 @@ def test_trip_points_follow_the_device_ratio():
 
 def test_no_hysteresis_below_a_ratio_of_one():
     setup = three_stage_setup(0.8)
-    trips = measure_trip_points(setup, setup.network.parameters, 1, 0.1, 1e-4)
+    trips = measure_trip_points(setup, setup.network.parameters, 1, 0.01, 1e-4)
     assert abs(trips.up[0] - trips.down[0]) < 2e-4
 
 
 def test_three_stage_gain_and_static_offset_are_of_the_known_order():
     # common practice: gain of the order of 2 000, 2.5 mV for the full swing, static offset of the order of 1 mV
-    transfer = measure_transfer(three_stage_setup(0.8), 20e-3, 201)
+    transfer = measure_transfer(three_stage_setup(0.8), 5e-3, 51)
     assert transfer.failed == 0
     assert 2000 / 3 < transfer.gain < 2000 * 3
     assert 2.5e-3 / 3 < transfer.full_swing < 2.5e-3 * 3
@@ -228,10 +228,10 @@ def test_offset_of_draws_agrees_with_linear_sensitivities():
     predicted = predict_offset(setup)
     adjoint = linearise([setup])
     assert adjoint.offset_sigma[0] == pytest.approx(predicted.sigma, rel=0.03)
-    drawn = offset_distribution(setup, 300, np.random.default_rng(5), predicted.sigma)
+    drawn = offset_distribution(setup, 120, np.random.default_rng(5), predicted.sigma)
     assert drawn.failed == drawn.unbracketed == 0
-    # four standard errors of 300 draws
-    assert drawn.sigma == pytest.approx(predicted.sigma, rel=4 / np.sqrt(600))
+    # four standard errors of 120 draws
+    assert drawn.sigma == pytest.approx(predicted.sigma, rel=4 / np.sqrt(240))
 
 
 def test_input_pair_sets_the_offset_by_the_area_law():
@@ -249,7 +249,7 @@ def test_input_pair_sets_the_offset_by_the_area_law():
 def test_stochastic_noise_agrees_with_the_analytic_estimate():
     setup = clocked("single-tail")
     analytic = linearise([setup]).noise_sigma[0]
-    drawn = measure_noise(setup, analytic, 2000, np.random.default_rng(3))
+    drawn = measure_noise(setup, analytic, 1200, np.random.default_rng(3))
     assert drawn.failed == 0
     # 95 % interval, widened by half for the first-order estimate and the fixed step
     middle = (drawn.low + drawn.high) / 2
