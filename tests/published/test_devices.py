@@ -8,7 +8,12 @@ from scipy.special import wrightomega
 
 from flashplan.cell.charge import inversion_charge
 from flashplan.cell.circuit import device_parameters
-from flashplan.cell.device import channel_state, drain_current, small_signal
+from flashplan.cell.device import (
+    channel_state,
+    drain_current,
+    small_signal,
+    transit_frequency,
+)
 from flashplan.cell.device_noise import sampled_noise, thermal_current_density
 from flashplan.cell.mismatch import draw_mismatch, pair_sigma
 from flashplan.cell.process import (
@@ -228,3 +233,17 @@ def test_process_is_chosen_by_supply():
     assert choose_process(1.2).name == "generic-65nm"
     assert choose_process(1.0).name == "generic-28nm"
     assert choose_process(5.0).name == "generic-1um"
+
+
+def test_transit_frequency_of_a_saturated_channel():
+    # f_T = 1.5 mu (V_GS - V_T) / (2 pi n L^2) with 2/3 W L C_ox of gate capacitance, the long-channel handbook form
+    p = long_channel()
+    overdrive, length = 20.0, 10e-6
+    point = small_signal(p, p.threshold + overdrive, np.array([60.0]), np.zeros(1))
+    capacitance = 2 / 3 * LONG.oxide_capacitance * 10e-6 * length
+    mobility = LONG.nmos.mobility_factor / LONG.oxide_capacitance
+    expected = (
+        1.5 * mobility * overdrive / (2 * np.pi * LONG.nmos.slope_factor * length**2)
+    )
+    found = transit_frequency(point.transconductance, np.array([capacitance]))
+    assert found == pytest.approx(expected, rel=0.02)

@@ -124,10 +124,3 @@ def gate_charge(
     )
     picked: Floats = (network.sign * total)[devices].sum(axis=0)
     return picked
-
-
-def input_capacitance(setup: Setup) -> float:
-    """Small-signal capacitance of one input in the middle of its use, F: the network's constant gate capacitances."""
-    network = setup.network
-    row = network.circuit.nodes.index("minus")
-    return float(network.capacitance[row, row])

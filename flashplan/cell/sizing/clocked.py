@@ -84,8 +84,9 @@ def sizes_of(topology: Topology, conditions: Conditions, x: Floats) -> Sizes:
 def setup_of(topology: Topology, conditions: Conditions, x: Floats) -> Setup:
     """The bench setup of a cell with these sizes."""
     sizes = sizes_of(topology, conditions, x)
-    circuit, lead = _circuit(topology, conditions, sizes, x)
+    circuit = _circuit(topology, conditions, sizes, x)
     network = build_network(circuit, conditions.process, conditions.supply)
+    lead = 0.0
     if topology.static:
         row = circuit.nodes.index("p_a")
         settle = 6.0 * math.exp(x[-1]) * float(network.capacitance[row, row])
@@ -117,12 +118,12 @@ def require_supply(topology: Topology, conditions: Conditions) -> None:
 
 def _circuit(
     topology: Topology, conditions: Conditions, sizes: Sizes, x: Floats
-) -> tuple[Circuit, float]:
+) -> Circuit:
     if topology.name == single_tail.NAME:
-        return single_tail.single_tail(sizes, conditions.load), 0.0
+        return single_tail.single_tail(sizes, conditions.load)
     if topology.name == double_tail.NAME:
-        return double_tail.double_tail(sizes, conditions.load), 0.0
-    return preamp_latch.preamp_latch(sizes, conditions.load, math.exp(x[-1])), 0.0
+        return double_tail.double_tail(sizes, conditions.load)
+    return preamp_latch.preamp_latch(sizes, conditions.load, math.exp(x[-1]))
 
 
 def _bias_current(width: float, conditions: Conditions) -> float:

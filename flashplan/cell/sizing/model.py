@@ -87,11 +87,11 @@ def _skew(setup: Setup, instant: float) -> float:
 
 
 def _kickback(setup: Setup, topology: Topology) -> float:
-    swing = network_swing(setup, topology)
+    swing = _swing(setup, topology)
     return 0.25 * swing * _input(setup)
 
 
-def network_swing(setup: Setup, topology: Topology) -> float:
+def _swing(setup: Setup, topology: Topology) -> float:
     """How far the drains of the input pair move in a decision, V."""
     if not topology.static:
         return setup.network.supply
