@@ -40,6 +40,8 @@ class Topology(StrEnum):
     all = "all"
 
 
+_INTERRUPTED = 130
+
 PlanFile = Annotated[
     Path, typer.Argument(metavar="PLAN", help="plan file (TOML)", show_default=False)
 ]
@@ -378,9 +380,14 @@ def main() -> None:
     except InputError as error:
         print(f"flashplan: {error}", file=sys.stderr)
         sys.exit(2)
-    except KeyboardInterrupt:
-        print("flashplan: interrupted", file=sys.stderr)
-        sys.exit(130)
+    except SystemExit as ending:
+        if (
+            ending.code == _INTERRUPTED
+        ):  # the command-line library turns Ctrl-C into this, without a word
+            print(
+                "flashplan: interrupted; what a --store holds is kept", file=sys.stderr
+            )
+        raise
     except BrokenPipeError:
         # The reader has seen enough; closing stderr as well keeps the interpreter from complaining about it.
         sys.stderr.close()
