@@ -64,7 +64,7 @@ def test_a_sweep_killed_twenty_times_ends_like_one_left_alone(tmp_path: Path) ->
     plan.write_text(text)
 
     def command(store: str) -> list[str]:
-        vary = "comparator.datasheet.offset_sigma=0.5 mV:3 mV:40"
+        vary = "comparator.datasheet.offset_sigma=0.5 mV:3 mV:16"
         return [
             sys.executable,
             "-m",
@@ -95,7 +95,7 @@ def test_a_sweep_killed_twenty_times_ends_like_one_left_alone(tmp_path: Path) ->
             stderr=subprocess.DEVNULL,
             env=environment,
         )
-        time.sleep(draw.uniform(0.2, 2.5))
+        time.sleep(draw.uniform(0.5, 2.5))
         process.send_signal(signal.SIGKILL)
         killed += process.wait() == -signal.SIGKILL
         if (
@@ -106,4 +106,4 @@ def test_a_sweep_killed_twenty_times_ends_like_one_left_alone(tmp_path: Path) ->
         command(store), capture_output=True, text=True, env=environment, check=True
     )
     assert last.stdout == alone.stdout
-    assert len(json.loads(last.stdout)["points"]) == 40
+    assert len(json.loads(last.stdout)["points"]) == 16
