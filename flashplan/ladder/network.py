@@ -1,42 +1,69 @@
-"""A linear network: parts on a graph, turned into sparse matrices of its free nodes."""
+"""A linear network: parts on a graph, turned into sparse matrices of its free nodes; at rest and at a frequency."""
 
-from dataclasses import dataclass
-from typing import Literal
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, replace
+from typing import Literal, NamedTuple
 
 import networkx as nx
 import numpy as np
-from numpy.typing import NDArray
-from scipy.sparse import coo_array, csc_array
+from numpy.typing import ArrayLike, NDArray
+from scipy.sparse import (
+    block_diag,
+    coo_array,
+    csc_array,
+    diags_array,
+    hstack,
+    vstack,
+)
 from scipy.sparse.linalg import splu
 
 from flashplan.errors import InputError
 
 Floats = NDArray[np.float64]
-Kind = Literal["resistor", "capacitor", "voltage", "current"]
+Complexes = NDArray[np.complex128]
+Kind = Literal["resistor", "capacitor", "inductor", "voltage", "current"]
 GROUND = "ground"
 
 
-@dataclass(frozen=True)
-class Part:
-    """One part between two nodes: ohm, F, V (first against second) or A (drawn out of the first into the second)."""
+class Part(NamedTuple):
+    """One part between two nodes: ohm, F, H, V (first against second) or A (drawn out of the first into the second).
+
+    sigma: relative spread of the value of one part to the next.
+    """
 
     kind: Kind
     first: str
     second: str
     value: float
     label: str
+    sigma: float = 0.0
+
+
+@dataclass(frozen=True)
+class Branches:
+    """All b parts of a kind: value and sigma (b,), and where they hang: +1 at the first node, -1 at the second.
+
+    free: (f, b) on the free nodes; held: (h, b) on the held ones.
+    """
+
+    value: Floats
+    sigma: Floats
+    free: csc_array
+    held: csc_array
 
 
 @dataclass(frozen=True)
 class Network:
-    """Matrices of the free nodes, those that no voltage source holds; f free nodes, h held ones.
+    """f free nodes and h held by voltage sources, ground among them, with l inductors.
 
-    names: of the free nodes in order. conductance, capacitance: (f, f). held: name of each held node and its voltage.
-    conductance_to, capacitance_to: (f, h) between free and held nodes. drawn: (f,) current drawn out of each node.
+    names: of the free nodes in order. held: name of each held node and its voltage. conductance, capacitance: (f, f).
+    conductance_to, capacitance_to: (f, h) what ties free to held nodes, positive. drawn: (f,) current drawn out of each.
     """
 
     names: tuple[str, ...]
     held: dict[str, float]
+    resistors: Branches
+    inductors: Branches
     conductance: csc_array
     capacitance: csc_array
     conductance_to: csc_array
@@ -48,122 +75,193 @@ class Network:
         return np.array(list(self.held.values()))
 
 
-def build_network(parts: list[Part]) -> Network:
+def build_network(parts: Sequence[Part]) -> Network:
     """Assemble parts into matrices.
 
-    Voltage sources must stand between a node and ground. Raises InputError that names the part for a value that is
-    not positive, two sources on one node, and a node that no resistor ties to a source or to ground.
-    Source: nodal analysis; any textbook on networks.
+    Raises InputError that names the part for a value that is not positive, a loop of voltage sources, or of sources and
+    inductors, that leaves a current undetermined, a source with no path of sources to ground, and a node that floats.
+    Source: nodal analysis with branch currents; any textbook on networks.
     """
-    graph: nx.MultiGraph[str] = nx.MultiGraph()
-    graph.add_node(GROUND)
-    held = {GROUND: 0.0}
-    for part in parts:
-        if part.kind in ("resistor", "capacitor") and not part.value > 0:
-            raise InputError(f"{part.label} must be positive, found {part.value:g}")
-        if part.kind == "voltage":
-            if part.second != GROUND:
-                raise InputError(f"{part.label} must be a source against {GROUND}")
-            if part.first in held:
-                raise InputError(
-                    f"{part.label} holds a node that another source holds already"
-                )
-            held[part.first] = part.value
-        graph.add_edge(part.first, part.second, part=part)
-    _refuse_floating(graph, held)
+    graph = _graph(parts)
+    held = _held_nodes(graph, parts)
+    _refuse_undetermined(graph, parts, held)
     names = tuple(node for node in graph if node not in held)
     free = {name: index for index, name in enumerate(names)}
     fixed = {name: index for index, name in enumerate(held)}
+    by_kind: dict[Kind, Branches] = {
+        kind: _branches([part for part in parts if part.kind == kind], free, fixed)
+        for kind in ("resistor", "capacitor", "inductor", "current")
+    }
     conductance, conductance_to = _stamp(
-        [part for part in parts if part.kind == "resistor"], free, fixed
+        by_kind["resistor"], 1.0 / by_kind["resistor"].value
     )
     capacitance, capacitance_to = _stamp(
-        [part for part in parts if part.kind == "capacitor"], free, fixed
+        by_kind["capacitor"], by_kind["capacitor"].value
     )
-    drawn = np.zeros(len(names))
-    for part in parts:
-        if part.kind == "current":
-            if part.first in free:
-                drawn[free[part.first]] += part.value
-            if part.second in free:
-                drawn[free[part.second]] -= part.value
     return Network(
-        names, held, conductance, capacitance, conductance_to, capacitance_to, drawn
+        names,
+        held,
+        by_kind["resistor"],
+        by_kind["inductor"],
+        conductance,
+        capacitance,
+        conductance_to,
+        capacitance_to,
+        by_kind["current"].free @ by_kind["current"].value,
     )
 
 
-def _stamp(
-    parts: list[Part], free: dict[str, int], fixed: dict[str, int]
-) -> tuple[csc_array, csc_array]:
-    own: list[tuple[int, int, float]] = []
-    other: list[tuple[int, int, float]] = []
+def _branches(
+    parts: list[Part], free: Mapping[str, int], fixed: Mapping[str, int]
+) -> Branches:
+    def incidence(place: Mapping[str, int]) -> csc_array:
+        first = [place.get(part.first, -1) for part in parts]
+        second = [place.get(part.second, -1) for part in parts]
+        rows = np.array([*first, *second], dtype=int)
+        columns = np.tile(np.arange(len(parts)), 2)
+        signs = np.repeat([1.0, -1.0], len(parts))
+        there = rows >= 0
+        return coo_array(
+            (signs[there], (rows[there], columns[there])),
+            shape=(len(place), len(parts)),
+        ).tocsc()
+
+    return Branches(
+        np.array([part.value for part in parts]),
+        np.array([part.sigma for part in parts]),
+        incidence(free),
+        incidence(fixed),
+    )
+
+
+def _stamp(branches: Branches, weight: Floats) -> tuple[csc_array, csc_array]:
+    weighted = branches.free @ diags_array(weight)
+    return csc_array(weighted @ branches.free.T), csc_array(-weighted @ branches.held.T)
+
+
+def _graph(parts: Sequence[Part]) -> "nx.MultiGraph[str]":
+    graph: nx.MultiGraph[str] = nx.MultiGraph()
+    graph.add_node(GROUND)
     for part in parts:
-        value = 1.0 / part.value if part.kind == "resistor" else part.value
-        for here, there in ((part.first, part.second), (part.second, part.first)):
-            if here not in free:
-                continue
-            own.append((free[here], free[here], value))
-            if there in free:
-                own.append((free[here], free[there], -value))
-            else:
-                other.append((free[here], fixed[there], value))
-    return _sparse(own, (len(free), len(free))), _sparse(other, (len(free), len(fixed)))
+        if not np.isfinite(part.value):
+            raise InputError(f"{part.label} must be finite, found {part.value:g}")
+        if part.kind in ("resistor", "capacitor", "inductor") and not part.value > 0:
+            raise InputError(f"{part.label} must be positive, found {part.value:g}")
+        graph.add_edge(part.first, part.second, part=part)
+    return graph
 
 
-def _sparse(entries: list[tuple[int, int, float]], shape: tuple[int, int]) -> csc_array:
-    rows, columns, values = np.array(entries).T if entries else np.zeros((3, 0))
-    return coo_array(
-        (values, (rows.astype(int), columns.astype(int))), shape=shape
-    ).tocsc()
-
-
-def _refuse_floating(graph: "nx.MultiGraph[str]", held: dict[str, float]) -> None:
-    resistive: nx.Graph[str] = nx.Graph()
-    resistive.add_nodes_from(graph)
-    resistive.add_edges_from(
-        (a, b) for a, b, part in _edges(graph) if part.kind == "resistor"
-    )
-    tied = {
-        node
-        for component in nx.connected_components(resistive)
-        if component & set(held)
-        for node in component
-    }
-    for node in graph:
-        if node not in tied:
-            labels = ", ".join(
-                sorted({part.label for a, b, part in _edges(graph) if node in (a, b)})
-            )
+def _held_nodes(graph: "nx.MultiGraph[str]", parts: Sequence[Part]) -> dict[str, float]:
+    """Voltage of each node that sources tie to ground."""
+    sources: nx.Graph[str] = nx.Graph()
+    sources.add_node(GROUND)
+    joined = nx.utils.UnionFind(graph)
+    for part in parts:
+        if part.kind == "voltage":
+            if joined[part.first] == joined[part.second]:
+                raise InputError(f"{part.label} closes a loop of voltage sources")
+            joined.union(part.first, part.second)
+            sources.add_edge(part.first, part.second, part=part)
+    held = {GROUND: 0.0}
+    for known, found in nx.bfs_edges(sources, GROUND):
+        part = sources.edges[known, found]["part"]
+        held[found] = held[known] + (part.value if part.first == found else -part.value)
+    for first, second, part in sources.edges(data="part"):
+        if first not in held:
             raise InputError(
-                f"node {node} floats: no resistor ties it to a source; it hangs on {labels}"
+                f"{part.label} between {first} and {second} is not tied to {GROUND} by sources"
+            )
+    return held
+
+
+def _refuse_undetermined(
+    graph: "nx.MultiGraph[str]", parts: Sequence[Part], held: Mapping[str, float]
+) -> None:
+    shorted = nx.utils.UnionFind(graph)
+    shorted.union(*held)
+    tied = nx.utils.UnionFind(graph)
+    tied.union(*held)
+    soft: set[str] = set()
+    for part in parts:
+        if part.kind == "inductor":
+            if shorted[part.first] == shorted[part.second]:
+                raise InputError(
+                    f"{part.label} closes a loop of inductors and voltage sources"
+                )
+            shorted.union(part.first, part.second)
+        if part.kind in ("resistor", "inductor"):
+            tied.union(part.first, part.second)
+        if part.kind in ("resistor", "capacitor"):
+            soft.update((part.first, part.second))
+    ground = tied[GROUND]
+    for node in graph:
+        if tied[node] != ground:
+            raise InputError(
+                f"node {node} floats: nothing that carries direct current ties it to a source;"
+                f" it hangs on {_labels(graph, node)}"
+            )
+        if node not in held and node not in soft:
+            raise InputError(
+                f"node {node} has neither a resistor nor a capacitor; it hangs on {_labels(graph, node)}"
             )
 
 
-def _edges(graph: "nx.MultiGraph[str]") -> list[tuple[str, str, Part]]:
-    return list(graph.edges(data="part"))
+def _labels(graph: "nx.MultiGraph[str]", node: str) -> str:
+    parts: list[tuple[str, str, Part]] = list(graph.edges(node, data="part"))
+    return ", ".join(sorted({part.label for _, _, part in parts}))
+
+
+def with_resistances(network: Network, value: ArrayLike) -> Network:
+    """The same network with other values of its resistors, (r,) in the order of their parts."""
+    changed = replace(network.resistors, value=np.asarray(value, dtype=np.float64))
+    own, to = _stamp(changed, 1.0 / changed.value)
+    return replace(network, resistors=changed, conductance=own, conductance_to=to)
+
+
+def loss_matrix(network: Network) -> csc_array:
+    """(f + l, f + l) of free voltages and inductor currents: conductances, and each inductor's current out of its nodes."""
+    coil = network.inductors.free
+    above = hstack([network.conductance, coil])
+    below = hstack([-coil.T, csc_array((coil.shape[1], coil.shape[1]))])
+    return csc_array(vstack([above, below]))
+
+
+def storage_matrix(network: Network) -> csc_array:
+    """(f + l, f + l): capacitances and inductances."""
+    inductance = diags_array(network.inductors.value)
+    return csc_array(block_diag([network.capacitance, inductance]))
 
 
 def dc_voltages(network: Network) -> Floats:
     """Voltages of the free nodes at rest, (f,)."""
-    return np.asarray(
-        splu(network.conductance).solve(
-            network.conductance_to @ network.held_voltages() - network.drawn
-        )
+    held = network.held_voltages()
+    source = np.concatenate(
+        [
+            network.conductance_to @ held - network.drawn,
+            network.inductors.held.T @ held,
+        ]
     )
+    return np.asarray(splu(loss_matrix(network)).solve(source))[: len(network.names)]
 
 
 def ac_voltages(
-    network: Network, frequency: float, drive: dict[str, complex]
-) -> NDArray[np.complex128]:
-    """Phasors of the free nodes for phasors on some held nodes, (f,); all other held nodes stand still.
+    network: Network, frequencies: ArrayLike, drive: Mapping[str, complex]
+) -> Complexes:
+    """Phasors of the free nodes, (n, f), at n frequencies in Hz for phasors on some held nodes; the others stand still.
 
-    frequency in Hz. Source: complex admittances G + j 2 pi f C.
+    Source: complex admittances, (A + j 2 pi f E) x = source.
     """
-    turn = 2j * np.pi * frequency
     phasor = np.array([drive.get(name, 0.0) for name in network.held], dtype=complex)
-    admittance = (network.conductance + turn * network.capacitance).tocsc()
-    return np.asarray(
-        splu(admittance).solve(
-            network.conductance_to @ phasor + turn * (network.capacitance_to @ phasor)
+    loss, storage = loss_matrix(network), storage_matrix(network)
+    coil = network.inductors.held.T @ phasor
+    out = []
+    for frequency in np.atleast_1d(np.asarray(frequencies, dtype=np.float64)):
+        turn = 2j * np.pi * frequency
+        node = network.conductance_to @ phasor + turn * (
+            network.capacitance_to @ phasor
         )
-    )
+        solved = splu((loss + turn * storage).tocsc()).solve(
+            np.concatenate([node, coil])
+        )
+        out.append(solved[: len(network.names)])
+    return np.array(out)

@@ -3,11 +3,16 @@
 import numpy as np
 
 from flashplan.errors import InputError
-from flashplan.ladder.effects import feedthrough_phasor, mismatch_sigma, noise_sigma
-from flashplan.ladder.kickback import residue_at_rest
-from flashplan.ladder.network import dc_voltages
+from flashplan.ladder.effects import (
+    feedthrough_phasor,
+    heat,
+    noise_sigma,
+    rest_errors,
+)
+from flashplan.ladder.kickback import lasting_modes, recovery_time, residue_at_rest
+from flashplan.ladder.mismatch import mismatch_sigma
+from flashplan.ladder.reference import build_reference
 from flashplan.ladder.result import LadderResult
-from flashplan.ladder.straight import at_taps, ladder_network
 from flashplan.plan.datasheet import Datasheet
 from flashplan.plan.model import Plan
 
@@ -29,41 +34,34 @@ def solve_ladder(
             '"auto" is worked out by the budget',
             f"{plan.source}: ladder.total_resistance",
         )
-    resistance, count, lsb = float(given), plan.comparators, plan.lsb
-    network = ladder_network(plan, cell, resistance)
-    still = plan.model_copy(
-        update={"ladder": plan.ladder.model_copy(update={"bias_current": 0.0})}
-    )
-    tap = np.arange(1, count + 1)
-    held = tap * lsb
-    without_bias = at_taps(
-        network, dc_voltages(ladder_network(still, cell, resistance)), count, held
-    )
-    at_rest = at_taps(network, dc_voltages(network), count, held)
-    kickback = None
+    resistance, lsb = float(given), plan.lsb
+    period, span = 1.0 / plan.converter.sample_rate, plan.converter.full_scale
+    reference = build_reference(plan, cell, resistance)
+    rest = rest_errors(plan, resistance)
+    kickback = recovery = through = None
     if cell.kickback_charge is not None:
-        period = 1.0 / plan.converter.sample_rate
-        kickback = residue_at_rest(network, count, period) * cell.kickback_charge / lsb
-    through = None
+        charge = cell.kickback_charge
+        modes = lasting_modes(reference, period)
+        kickback = residue_at_rest(reference, modes, period) * charge / lsb
+        recovery = recovery_time(reference, modes, period, charge, span, lsb)
     if cell.coupling_capacitance is not None:
-        amplitude = plan.converter.full_scale / 2
-        through = (
-            feedthrough_phasor(
-                network, count, plan.converter.input_frequency, amplitude
-            )
-            / lsb
-        )
+        frequency = plan.converter.input_frequency
+        through = feedthrough_phasor(reference, frequency, span / 2)[0] / lsb
+    fixed = np.sum(list(rest.values()), axis=0)
+    if kickback is not None:
+        fixed = fixed + kickback
     return LadderResult(
         total_resistance=resistance,
-        taps=at_rest if kickback is None else at_rest + kickback * lsb,
-        lead_lsb=without_bias / lsb - tap,
-        bias_lsb=(at_rest - without_bias) / lsb,
+        taps=(np.arange(1, plan.comparators + 1) + fixed) * lsb,
+        lead_lsb=rest["lead"],
+        bias_lsb=rest["bias"],
+        gradient_lsb=rest["gradient"],
+        turns_lsb=rest["turns"],
         kickback_lsb=kickback,
         feedthrough_lsb=through,
-        mismatch_sigma_lsb=mismatch_sigma(
-            plan.converter.bits, plan.ladder.resistor_sigma, plan.ladder.forced_taps
-        ),
-        noise_sigma_lsb=noise_sigma(network, count) / lsb,
-        power=plan.converter.full_scale**2
-        / (resistance + 2 * plan.ladder.end_resistance),
+        mismatch_sigma_lsb=mismatch_sigma(plan, resistance),
+        noise_sigma_lsb=noise_sigma(reference) / lsb,
+        recovery_time=recovery,
+        power=heat(reference.network),
+        fit=plan.goals.linearity_fit,
     )

@@ -6,6 +6,7 @@ from pydantic import Field, model_validator
 
 from flashplan.plan.datasheet import Datasheet
 from flashplan.plan.fields import Table, Unit
+from flashplan.plan.ladder import Ladder
 
 Scheme = Literal[
     "rom",
@@ -76,17 +77,6 @@ class Allocation(Table):
                 f"the shares of offset, noise, hysteresis, skew, jitter and ladder sum to {total:.4g}; at most 1"
             )
         return self
-
-
-class Ladder(Table):
-    """The reference ladder that the comparators hang on."""
-
-    total_resistance: Literal["auto"] | Annotated[float, Unit("ohm", gt=0)] = "auto"
-    resistor_sigma: Annotated[float, Unit("ratio", ge=0, lt=0.3)] = 0.0
-    tap_capacitance: Annotated[float, Unit("F", gt=0)] = 10e-15
-    end_resistance: Annotated[float, Unit("ohm", ge=0)] = 0.0
-    forced_taps: tuple[Annotated[int, Field(ge=1, strict=True)], ...] = ()
-    bias_current: Annotated[float, Unit("A")] = 0.0
 
 
 class Clock(Table):

@@ -31,11 +31,19 @@ def test_a_divider_divides() -> None:
         ),
         (
             Part("voltage", "a", GROUND, 1.0, "second source"),
-            "second source holds a node that another source holds",
+            "second source closes a loop of voltage sources",
         ),
         (
-            Part("voltage", "a", "b", 1.0, "bridge"),
-            "bridge must be a source against ground",
+            Part("voltage", "b", "c", 1.0, "bridge"),
+            "bridge between b and c is not tied to ground by sources",
+        ),
+        (
+            Part("inductor", "a", GROUND, 1e-9, "short coil"),
+            "short coil closes a loop of inductors and voltage sources",
+        ),
+        (
+            Part("resistor", "a", GROUND, float("nan"), "odd arm"),
+            "odd arm must be finite",
         ),
         (
             Part("capacitor", "far", GROUND, 1e-15, "far load"),

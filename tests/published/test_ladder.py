@@ -9,8 +9,9 @@ from scipy.linalg import expm
 
 from flashplan.ladder import LadderResult, kickback_per_charge, solve_ladder
 from flashplan.ladder.modes import network_modes
-from flashplan.ladder.straight import ladder_network
-from flashplan.plan import Plan, changed_plan
+from flashplan.ladder.network import Network
+from flashplan.ladder.reference import build_reference
+from flashplan.plan import Datasheet, Plan, changed_plan
 from tests.plans import starter_plan
 
 
@@ -25,6 +26,10 @@ def ladder_plan(bits: int, **ladder: object) -> Plan:
         starter_plan(),
         {**changes, **{f"ladder.{key}": value for key, value in ladder.items()}},
     )
+
+
+def ladder_network(plan: Plan, cell: Datasheet, resistance: float) -> Network:
+    return build_reference(plan, cell, resistance).network
 
 
 def solved(plan: Plan) -> LadderResult:
