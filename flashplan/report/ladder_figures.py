@@ -141,10 +141,14 @@ def tradeoff_figure(
     ohm, milliwatt = trade.total_resistance, trade.power * 1e3
 
     def to_power(resistance: ArrayLike) -> NDArray:
-        return np.asarray(np.interp(resistance, ohm, milliwatt))
+        return np.asarray(
+            np.interp(np.asarray(resistance, dtype=float), ohm, milliwatt)
+        )
 
     def to_resistance(power: ArrayLike) -> NDArray:
-        return np.asarray(np.interp(power, milliwatt[::-1], ohm[::-1]))
+        return np.asarray(
+            np.interp(np.asarray(power, dtype=float), milliwatt[::-1], ohm[::-1])
+        )
 
     above = axes.secondary_xaxis("top", functions=(to_power, to_resistance))
     above.set_xlabel("reference power [mW]")
