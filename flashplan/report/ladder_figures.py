@@ -1,9 +1,11 @@
 """Figures of the reference ladder."""
 
+from typing import Any
+
 import numpy as np
 from matplotlib.colors import TwoSlopeNorm
 from matplotlib.figure import Figure
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import NDArray
 
 from flashplan.ladder import LadderResult, effects
 from flashplan.ladder.tradeoff import TradeOff
@@ -140,15 +142,11 @@ def tradeoff_figure(
     # Power falls steadily with the resistance, so that it can share the axis.
     ohm, milliwatt = trade.total_resistance, trade.power * 1e3
 
-    def to_power(resistance: ArrayLike) -> NDArray:
-        return np.asarray(
-            np.interp(np.asarray(resistance, dtype=float), ohm, milliwatt)
-        )
+    def to_power(resistance: Any) -> NDArray:
+        return np.asarray(np.interp(resistance, ohm, milliwatt))
 
-    def to_resistance(power: ArrayLike) -> NDArray:
-        return np.asarray(
-            np.interp(np.asarray(power, dtype=float), milliwatt[::-1], ohm[::-1])
-        )
+    def to_resistance(power: Any) -> NDArray:
+        return np.asarray(np.interp(power, milliwatt[::-1], ohm[::-1]))
 
     above = axes.secondary_xaxis("top", functions=(to_power, to_resistance))
     above.set_xlabel("reference power [mW]")
