@@ -31,6 +31,7 @@ _HOMES = {
     "plan_at_limits": "flashplan.budget.at_limits",
     "solve_ladder": "flashplan.chain",
     "load_cell": "flashplan.plan.load",
+    "size_cell": "flashplan.chain",
     "check_cell": "flashplan.cell.check",
     "simulate_array": "flashplan.chain",
     "compare_decoders": "flashplan.chain",
@@ -54,6 +55,7 @@ __all__ = [
     "plan_at_limits",
     "run_sweep",
     "simulate_array",
+    "size_cell",
     "solve_ladder",
     "write_report",
 ]

@@ -7,6 +7,9 @@ from flashplan import array, decoder, ladder
 from flashplan.array.result import ArrayResult
 from flashplan.budget.derive import derive_budget
 from flashplan.budget.reference import resolved
+from flashplan.budget.result import Budget
+from flashplan.cell import size
+from flashplan.cell.sized import SizedCell
 from flashplan.decoder import DecoderTable
 from flashplan.errors import InputError
 from flashplan.ladder import LadderResult
@@ -53,6 +56,21 @@ def compare_decoders(
         )
     words = array.decoder_words(plan, result.dynamic, result.word_error_rate)
     return decoder.compare_schemes(plan, words)
+
+
+def size_cell(
+    plan: Plan,
+    budget: Budget | None = None,
+    topology: str | None = None,
+    progress: Progress | None = None,
+) -> SizedCell:
+    """Size a comparator for a plan against its budget, derived where none is given. Raises InputError."""
+    return size.size_cell(
+        plan,
+        derive_budget(plan) if budget is None else budget,
+        topology,
+        progress=progress,
+    )
 
 
 def measure_codes(codes: str | Path, plan: Plan) -> MeasureResult:

@@ -30,6 +30,18 @@ class Rank(StrEnum):
     depth = "depth"
 
 
+class Topology(StrEnum):
+    """Topologies that a cell may be sized in."""
+
+    single_tail = "single-tail"
+    double_tail = "double-tail"
+    preamp_latch = "preamp-latch"
+    three_stage = "three-stage"
+    all = "all"
+
+
+_INTERRUPTED = 130
+
 PlanFile = Annotated[
     Path, typer.Argument(metavar="PLAN", help="plan file (TOML)", show_default=False)
 ]
@@ -90,6 +102,57 @@ def ladder(plan: PlanFile, json: AsJson = False, out: OutFile = None) -> None:
 
     result = fp.solve_ladder(fp.load_plan(plan))
     _emit(result.to_dict(), lambda: ladder_table(result), json, out)
+
+
+@app.command()
+def size(
+    plan: PlanFile,
+    topology: Annotated[
+        Topology | None,
+        typer.Option(
+            "--topology",
+            help="default: the plan's own, or double-tail; all: side by side",
+        ),
+    ] = None,
+    json: AsJson = False,
+    out: Annotated[
+        Path | None,
+        typer.Option(
+            "--out", metavar="FILE", help="write the datasheet (TOML) to FILE"
+        ),
+    ] = None,
+) -> None:
+    """Size a comparator cell against the budget."""
+    import flashplan as fp
+    from flashplan.cell.sized import datasheet_toml
+    from flashplan.files import as_json, write_whole
+    from flashplan.report.size_tables import sized_table, topologies_table
+
+    loaded = fp.load_plan(plan)
+    if topology is Topology.all and out is not None:
+        raise InputError("a datasheet is of one topology; name it", "--topology")
+    names = (
+        ["single-tail", "double-tail", "preamp-latch"]
+        if topology is Topology.all
+        else [topology]
+    )
+    budget = fp.derive_budget(loaded)
+    with _progress() as progress:
+        cells = [
+            fp.size_cell(loaded, budget, name and str(name), progress) for name in names
+        ]
+    if out is not None:
+        write_whole(out, datasheet_toml(cells[0]))
+    if json:
+        document = (
+            cells[0].to_dict()
+            if len(cells) == 1
+            else {"cells": [cell.to_dict() for cell in cells]}
+        )
+        sys.stdout.write(as_json(document))
+    else:
+        _print(sized_table(cells[0]) if len(cells) == 1 else topologies_table(cells))
+    _judge(any(cell.met for cell in cells))
 
 
 @app.command()
@@ -283,10 +346,14 @@ def _emit(
     if json:
         sys.stdout.write(text)
     else:
-        from rich.console import Console
-
-        Console(highlight=False).print(table())
+        _print(table())
     sys.stdout.flush()
+
+
+def _print(table: "RenderableType") -> None:
+    from rich.console import Console
+
+    Console(highlight=False).print(table)
 
 
 def _executor(workers: int, cluster: str | None = None) -> Any:
@@ -313,9 +380,14 @@ def main() -> None:
     except InputError as error:
         print(f"flashplan: {error}", file=sys.stderr)
         sys.exit(2)
-    except KeyboardInterrupt:
-        print("flashplan: interrupted", file=sys.stderr)
-        sys.exit(130)
+    except SystemExit as ending:
+        if (
+            ending.code == _INTERRUPTED
+        ):  # the command-line library turns Ctrl-C into this, without a word
+            print(
+                "flashplan: interrupted; what a --store holds is kept", file=sys.stderr
+            )
+        raise
     except BrokenPipeError:
         # The reader has seen enough; closing stderr as well keeps the interpreter from complaining about it.
         sys.stderr.close()

@@ -14,13 +14,16 @@ from flashplan.plan.datasheet import Datasheet
 from flashplan.plan.model import Plan
 from flashplan.study.threads import one_thread
 
-# Thresholds drawn at once: a few megabytes, small enough for the cache and large enough for numpy.
-_CHUNK_THRESHOLDS = 2**18
+# Thresholds drawn at once, a megabyte: small enough for the cache; but never so few arrays that numpy's calls cost more.
+_CHUNK_THRESHOLDS = 2**17
+_FEWEST_ARRAYS = 128
 
 
 def chunk_arrays(plan: Plan) -> int:
     """Arrays in one chunk; part of what makes a seed's result what it is."""
-    return max(1, min(plan.array.arrays, _CHUNK_THRESHOLDS // plan.comparators))
+    return min(
+        plan.array.arrays, max(_FEWEST_ARRAYS, _CHUNK_THRESHOLDS // plan.comparators)
+    )
 
 
 def chunk_count(plan: Plan) -> int:

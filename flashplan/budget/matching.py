@@ -69,13 +69,15 @@ def resistor_line(plan: Plan, room: ErrorRoom) -> BudgetLine:
     part = RESISTOR_PART * share.ladder
     # A walk pinned at both ends is widest at the middle, sqrt(segments)/2 units of one resistor's sigma.
     per_middle_tap = 2.0 / math.sqrt(2**bits)
+    # Without a share for the offset there is still some: a thousandth of the resistors' part is as good as none.
+    offset_part = math.sqrt(max(share.offset, 1e-6 * part, 1e-12))
     scale = largest_mismatch_scale(
         bits,
         goals.yield_,
         dnl,
         inl,
         goals.linearity_fit,
-        offset_part=math.sqrt(share.offset),
+        offset_part=offset_part,
         resistor_part=math.sqrt(part) * per_middle_tap,
     )
     power = walk_power(bits)

@@ -124,7 +124,9 @@ def kickback_line(plan: Plan, room: ErrorRoom) -> BudgetLine:
         binding = min(candidates, key=lambda name: candidates[name])
         limit = candidates[binding]
         if limit == 0:
-            note = "lead, bias, feedthrough and noise alone use up the room of the ladder"
+            note = (
+                "lead, bias, feedthrough and noise alone use up the room of the ladder"
+            )
         inputs["total resistance used"] = Input(quiet.total_resistance, "ohm")
     return BudgetLine(
         "kickback_charge",

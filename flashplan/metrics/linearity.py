@@ -51,6 +51,7 @@ def fitted_line(
         return error[..., :1], 1.0 + (error[..., -1:] - error[..., :1]) / last
     if fit == "best":
         lever = np.arange(last + 1) - last / 2
-        tilt = (error @ lever / (lever @ lever))[..., np.newaxis]
-        return error.mean(axis=-1, keepdims=True) - tilt * last / 2, 1.0 + tilt
+        weights = np.stack([np.full(last + 1, 1 / (last + 1)), lever / (lever @ lever)])
+        line = error @ weights.T  # mean and tilt in one pass over the errors
+        return line[..., :1] - line[..., 1:] * last / 2, 1.0 + line[..., 1:]
     raise ValueError(f'fit must be "none", "endpoint" or "best", found {fit!r}')

@@ -136,7 +136,8 @@ def _largest(
             step /= max((y1 - y0) / (x1 - x0), 0.01)  # flat where no sigma will do
         if abs(step) < 1e-7:  # the next error is far smaller still
             return sigma_at(at + step)
-    raise ArithmeticError("the largest offset was not found")
+    # a string that dominates counts passes one by one: look for the jump
+    return brentq(excess, floor, 2 * goal, rtol=1e-8)
 
 
 def _below(

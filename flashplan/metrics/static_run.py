@@ -7,8 +7,9 @@ from numpy.typing import ArrayLike, NDArray
 
 from flashplan.metrics.linearity import Fit, dnl_inl, fitted_line
 
-# Doubles worked on at a time: small enough to stay in a core's own cache.
-_BLOCK = 2**15
+# Doubles worked on at a time, about what a core keeps close, and the fewest arrays side by side.
+_BLOCK = 2**17
+_WIDTH = 128
 
 
 class Judgement(NamedTuple):
@@ -62,7 +63,7 @@ def judge_arrays(
     """
     arrays, count = errors.shape
     max_dnl, max_inl = np.empty(arrays), np.empty(arrays)
-    width = max(8, _BLOCK // count)
+    width = max(_WIDTH, _BLOCK // count)
     ramp = np.arange(count, dtype=np.float64)[:, np.newaxis]
     work = np.empty((count, min(width, arrays)))
     for begin in range(0, arrays, width):

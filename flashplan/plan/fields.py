@@ -1,7 +1,7 @@
 """Field types of the files that people write: quantities with a unit and a range."""
 
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, get_args
 
 from pydantic import BaseModel, ConfigDict, GetCoreSchemaHandler
 from pydantic_core import CoreSchema, core_schema
@@ -46,12 +46,17 @@ class Unit:
 
 
 def unit_of(table: type[BaseModel], key: str) -> str:
-    """Unit of a table's key as annotated, "" where it has none."""
-    return next(
-        (
-            item.unit
-            for item in table.model_fields[key].metadata
-            if isinstance(item, Unit)
-        ),
-        "",
-    )
+    """Unit of a table's key as annotated, in one arm of a union too; "" where it has none.
+
+    >>> from typing import Annotated
+    >>> class Example(Table):
+    ...     rate: Annotated[float, Unit("Hz", gt=0)] | None = None
+    >>> unit_of(Example, "rate")
+    'Hz'
+    """
+    field = table.model_fields[key]
+    arms = [get_args(arm) for arm in get_args(field.annotation)]
+    for item in (*field.metadata, *(part for arm in arms for part in arm)):
+        if isinstance(item, Unit):
+            return item.unit
+    return ""

@@ -129,7 +129,10 @@ def _message(
     problems: dict[tuple[int | str, ...], list[ErrorDetails]] = {}
     for item in error.errors(include_url=False):
         problems.setdefault(_key_path(item["loc"], model), []).append(item)
-    path, items = next(iter(problems.items()))
+    # A misspelt key is missing as well: the spelling is what to tell.
+    path, items = min(
+        problems.items(), key=lambda found: found[1][0]["type"] != "extra_forbidden"
+    )
     kind, found = items[0]["type"], items[0]["input"]
     if kind == "extra_forbidden":
         text = f"unknown key{nearest_key(str(path[-1]), _table_at(model, path[:-1]))}"

@@ -20,6 +20,7 @@ Scheme = Literal[
     "folded-adder",
     "sorted-rom",
 ]
+Topology = Literal["single-tail", "double-tail", "preamp-latch", "three-stage"]
 
 
 class Converter(Table):
@@ -85,10 +86,15 @@ class Clock(Table):
 
 
 class Comparator(Table):
-    """The cell that the plan was drawn up with: a file or a table of its own."""
+    """The cell that the plan was drawn up with, a file or a table of its own; and what it is to be sized in.
+
+    process: name of a shipped process description, or a file relative to the plan.
+    """
 
     cell: str | None = None
     datasheet: Datasheet | None = None
+    process: str | None = None
+    topology: Topology | None = None
 
 
 class Decoder(Table):

@@ -6,11 +6,17 @@ from importlib.metadata import version
 from importlib.resources import files
 from typing import TYPE_CHECKING
 
+import numpy as np
 from jinja2 import Environment
 from matplotlib.figure import Figure
 
+from flashplan.budget.reference import moving_room
 from flashplan.budget.result import BudgetLine, Input
+from flashplan.budget.room import error_room
 from flashplan.decoder import fault_maps, rank
+from flashplan.ladder.advice import advise
+from flashplan.ladder.tradeoff import trade_off
+from flashplan.ladder.transients import code_step, worst_disturbance
 from flashplan.quantity import show
 from flashplan.report import array_figures, decoder_figures, ladder_figures
 from flashplan.report.drawing import as_svg
@@ -139,18 +145,72 @@ def _budget(results: "Results") -> Section:
 
 
 def _ladder(results: "Results") -> Section:
-    ladder = results.ladder
+    ladder, plan, cell = results.ladder, results.plan, results.plan.datasheet
+    resistance = ladder.total_resistance
+    figures = [
+        _drawn(
+            "ladder",
+            ladder_figures.tap_error_figure(ladder),
+            "Error of each tap by effect: what stays (lead, bias, kickback at rest), what scatters (mismatch, one sigma)"
+            " and what the input moves (feedthrough amplitude).",
+        )
+    ]
+    disturbance = worst_disturbance(plan, cell, resistance)
+    if disturbance is not None:
+        figures.append(
+            _drawn(
+                "disturbance",
+                ladder_figures.disturbance_figure(disturbance),
+                "Kickback in time at the tap that it moves most, in periodic steady state.",
+            )
+        )
+    step = code_step(plan, cell, resistance)
+    if step is not None:
+        figures.append(
+            _drawn(
+                "step",
+                ladder_figures.step_map_figure(step),
+                "All taps after a full-scale step of the input.",
+            )
+        )
+    trade = trade_off(plan, cell, np.geomspace(resistance / 8, resistance * 8, 33))
+    room = moving_room(plan, error_room(plan))
+    figures.append(
+        _drawn(
+            "tradeoff",
+            ladder_figures.tradeoff_figure(
+                trade, plan.allocation.systematic_lsb, room, resistance
+            ),
+            "What each effect takes of its room against the total resistance, and the reference power; marked: this plan.",
+        )
+    )
+    rows = [
+        (
+            change.name,
+            *(
+                show(value, "lsb", 3)
+                for value in (
+                    change.kickback_lsb,
+                    change.feedthrough_lsb,
+                    change.noise_lsb,
+                )
+            ),
+            f"{change.moving_lsb2:.3g}",
+        )
+        for change in advise(plan, cell, resistance)
+    ]
     return Section(
         "Reference ladder",
         ladder_sentence(ladder),
-        [
-            _drawn(
-                "ladder",
-                ladder_figures.tap_error_figure(ladder),
-                "Error of each tap by effect: what stays (lead, bias, kickback at rest), what scatters (mismatch, one sigma)"
-                " and what the input moves (feedthrough amplitude).",
-            )
-        ],
+        figures,
+        (
+            "what would help",
+            "kickback",
+            "feedthrough",
+            "noise",
+            "moving error power [LSB^2]",
+        ),
+        rows,
     )
 
 

@@ -38,7 +38,7 @@ def mark(met: bool | None) -> Text:
 def budget_table(budget: Budget) -> RenderableType:
     """Limits with shares, then the formula and source of each."""
     converter = budget.plan.converter
-    table = _table("quantity", "limit", "in LSB", "share", "set by")
+    table = plain_table("quantity", "limit", "in LSB", "share", "set by")
     for line in budget.lines.values():
         table.add_row(
             line.name,
@@ -59,13 +59,13 @@ def budget_table(budget: Budget) -> RenderableType:
         f"error power: {budget.ideal_error_lsb2:.4f} LSB^2 ideal, {budget.allowed_error_lsb2:.4f} LSB^2 allowed"
         f" by {budget.plan.goals.enob:g} effective bits"
     )
-    return Group(title, table, *origins, _caution())
+    return Group(title, table, *origins, caution())
 
 
 def explanation_table(explanation: Explanation) -> RenderableType:
     """One line with its inputs and what moves it."""
     line = explanation.line
-    inputs = _table("input", "value")
+    inputs = plain_table("input", "value")
     for name, given in line.inputs.items():
         value = (
             given.value
@@ -73,7 +73,7 @@ def explanation_table(explanation: Explanation) -> RenderableType:
             else show(given.value, given.unit)
         )
         inputs.add_row(name, value)
-    moves = _table("limit moves with", "percent per percent")
+    moves = plain_table("limit moves with", "percent per percent")
     for s in explanation.sensitivities:
         moves.add_row(s.key, f"{s.elasticity:+.3g}")
     head = [
@@ -94,7 +94,7 @@ def explanation_table(explanation: Explanation) -> RenderableType:
 
 def verdict_table(verdict: Verdict) -> RenderableType:
     """Limit, value and margin of each quantity, the verdict first."""
-    table = _table("quantity", "limit", "value", "margin", "", "verdict")
+    table = plain_table("quantity", "limit", "value", "margin", "", "verdict")
     for line in verdict.lines.values():
         known = (
             line.margin is not None
@@ -118,7 +118,7 @@ def verdict_table(verdict: Verdict) -> RenderableType:
         Text(verdict_sentence(verdict), style=_STYLE[verdict.met]),
         table,
         *notes,
-        _caution(),
+        caution(),
     )
 
 
@@ -131,7 +131,7 @@ def _difference(line: VerdictLine) -> float:
 
 def ladder_table(result: LadderResult) -> RenderableType:
     """Worst tap of each effect."""
-    table = _table("effect", "largest error", "at tap", "rms over taps")
+    table = plain_table("effect", "largest error", "at tap", "rms over taps")
     for name, errors in effects(result).items():
         if errors is None:
             table.add_row(name, "not known", "-", "-")
@@ -144,15 +144,15 @@ def ladder_table(result: LadderResult) -> RenderableType:
             str(worst + 1),
             show(rms, "lsb", 3),
         )
-    return Group(Text(ladder_sentence(result)), table, _caution())
+    return Group(Text(ladder_sentence(result)), table, caution())
 
 
 def array_table(plan: Plan, result: ArrayResult) -> RenderableType:
     """Goals first, then what was simulated."""
-    goals = _table("goal", "asked", "reached", "verdict")
+    goals = plain_table("goal", "asked", "reached", "verdict")
     for row in goal_rows(plan, result):
         goals.add_row(row.name, row.asked, row.reached, mark(row.met))
-    facts = _table("quantity", "value", "interval or spread over arrays")
+    facts = plain_table("quantity", "value", "interval or spread over arrays")
     if result.static is not None:
         s = result.static
         facts.add_row(
@@ -218,52 +218,51 @@ def array_table(plan: Plan, result: ArrayResult) -> RenderableType:
                 style="yellow",
             )
         )
-    return Group(*notes, goals, facts, _caution())
+    return Group(*notes, goals, facts, caution())
 
 
 def decoder_table(decoders: DecoderTable, order: Order) -> RenderableType:
     """All schemes on the same words, best first by the chosen order, and which one to take."""
-    table = _table(
+    table = plain_table(
         "scheme",
         "transistors",
         "depth",
+        "toggles",
         "rms",
         "max",
-        "wrong",
-        "undecided rms",
+        "undecided",
         "max",
-        "toggles",
-        "verdict",
+        "fits",
     )
     for row in rank(decoders.schemes, order):
         table.add_row(
             row.name,
             str(row.transistors),
             str(row.depth),
+            _number(row.transitions),
             _number(row.rms_error_lsb),
             str(row.max_error_lsb),
-            _number(row.wrong_word_rate),
             _number(row.undecided_rms_error_lsb),
             ("" if row.undecided_exact else ">=") + str(row.undecided_max_error_lsb),
-            _number(row.transitions),
-            Text("good enough", style="green")
+            Text("yes", style="green")
             if row.good_enough
-            else Text("costs more", style="yellow"),
+            else Text("no", style="yellow"),
         )
     return Group(
         Text(decoders.sentence, style="bold"),
         table,
         Text(
-            "errors in LSB against the number of thresholds passed; toggles: gate outputs that change per word",
+            "errors in LSB, rms and largest, over all words and given an undecided comparator;"
+            " toggles: gate outputs that change per word",
             style="dim",
         ),
-        _caution(),
+        caution(),
     )
 
 
 def measure_table(result: MeasureResult) -> RenderableType:
     """What the record holds, its figures, and which errors explain it."""
-    facts = _table("quantity", "value")
+    facts = plain_table("quantity", "value")
     facts.add_row(
         "samples",
         f"{result.samples}, {result.cycles:.6g} cycles"
@@ -284,7 +283,7 @@ def measure_table(result: MeasureResult) -> RenderableType:
         "largest |INL|",
         f"{np.nanmax(np.abs(result.inl_lsb)):.3f} LSB ({result.linearity_fit} line)",
     )
-    found = _table("explained by", "value", "95 % interval", "limit", "verdict")
+    found = plain_table("explained by", "value", "95 % interval", "limit", "verdict")
     for name, finding in result.diagnosis.items():
         found.add_row(
             name,
@@ -310,12 +309,12 @@ def measure_table(result: MeasureResult) -> RenderableType:
             "Too few thresholds were reached to tell what explains the codes.",
             style="yellow",
         )
-    return Group(first, facts, *([found] if result.diagnosis else []), _caution())
+    return Group(first, facts, *([found] if result.diagnosis else []), caution())
 
 
 def sweep_table(result: SweepResult) -> RenderableType:
     """One row a point; a goal that is missed is marked."""
-    table = _table(
+    table = plain_table(
         *(axis.key.split(".")[-1] for axis in result.axes),
         "yield",
         "ENOB",
@@ -349,11 +348,12 @@ def sweep_table(result: SweepResult) -> RenderableType:
     return Group(
         table,
         *(Text(f"impossible: {reason}", style="yellow") for reason in reasons),
-        _caution(),
+        caution(),
     )
 
 
-def _table(*columns: str) -> Table:
+def plain_table(*columns: str) -> Table:
+    """An empty table in the house style."""
     table = Table(box=None, pad_edge=False, header_style="bold", padding=(0, 2, 0, 0))
     for index, column in enumerate(columns):
         table.add_column(column, overflow="fold", no_wrap=index == 0)
@@ -378,5 +378,6 @@ def _number(value: float | None) -> str:
     return "-" if value is None else f"{value:.3g}"
 
 
-def _caution() -> RenderableType:
+def caution() -> RenderableType:
+    """The caution under every table."""
     return Text(CAUTION, style="dim")

@@ -2,12 +2,14 @@
 
 import os
 import signal
+import socket
 import threading
 from collections.abc import Iterator
 from concurrent.futures import CancelledError, Executor, ProcessPoolExecutor
 from contextlib import contextmanager
 from multiprocessing import get_context
 from multiprocessing.connection import Connection
+from urllib.parse import urlsplit
 
 from flashplan.errors import InputError
 
@@ -82,7 +84,13 @@ def _cluster_executor(address: str) -> Iterator[Executor]:
         raise InputError(
             "needs the optional extra: install flashplan[cluster]", "--cluster"
         ) from None
+    # A client that fails to connect is never quite closed, and blocks for ever when it is collected while another one
+    # starts: knock first, so that none is made in vain.
+    place = urlsplit(address if "://" in address else f"tcp://{address}")
     try:
+        socket.create_connection(
+            (place.hostname, place.port or 8786), timeout=_ANSWER_SECONDS
+        ).close()
         client = Client(address, timeout=_ANSWER_SECONDS, set_as_default=False)
     except (OSError, TimeoutError, ValueError) as error:
         raise InputError(

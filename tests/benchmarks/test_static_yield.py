@@ -22,11 +22,11 @@ def shortest(work: Callable[[], object], repeats: int = 5) -> float:
     return min(times)
 
 
-@pytest.mark.parametrize("bits", [4, 6, 8, 10])
+@pytest.mark.parametrize("bits", [4, 6, 8, 10, 12])
 @pytest.mark.parametrize("fit", ["none", "endpoint", "best"])
 def test_static_run_against_its_own_generator(benchmark, bits, fit) -> None:
-    count, chunk = 2**bits - 1, max(64, 2**15 // 2**bits)
-    chunks = 2**20 // count // chunk
+    count, chunk = 2**bits - 1, max(128, 2**17 // 2**bits)
+    chunks = max(1, 2**20 // count // chunk)
     generator = np.random.default_rng(1)
 
     def bare() -> None:

@@ -1,0 +1,1 @@
+"""Sizing a clocked cell: linearised model, optimiser, confirmation by the bench."""
