@@ -1,11 +1,10 @@
 """Figures of the reference ladder."""
 
-from typing import Any
+import math
 
 import numpy as np
 from matplotlib.colors import TwoSlopeNorm
 from matplotlib.figure import Figure
-from numpy.typing import NDArray
 
 from flashplan.ladder import LadderResult, effects
 from flashplan.ladder.tradeoff import TradeOff
@@ -139,16 +138,22 @@ def tradeoff_figure(
     axes.set_xlim(trade.total_resistance[0], trade.total_resistance[-1])
     axes.set_xlabel("total resistance [ohm]")
     axes.set_ylabel("part of the room used")
-    # Power falls steadily with the resistance, so that it can share the axis.
-    ohm, milliwatt = trade.total_resistance, trade.power * 1e3
-
-    def to_power(resistance: Any) -> NDArray:
-        return np.asarray(np.interp(resistance, ohm, milliwatt))
-
-    def to_resistance(power: Any) -> NDArray:
-        return np.asarray(np.interp(power, milliwatt[::-1], ohm[::-1]))
-
-    above = axes.secondary_xaxis("top", functions=(to_power, to_resistance))
-    above.set_xlabel("reference power [mW]")
+    # Power falls steadily with the resistance, so that round powers can be marked along the upper edge.
+    powers = _round_values(float(trade.power.min()), float(trade.power.max()))
+    above = axes.secondary_xaxis("top")
+    above.set_xticks(
+        np.interp(powers, trade.power[::-1], trade.total_resistance[::-1]),
+        [show(power, "W", 1) for power in powers],
+    )
+    above.set_xticks([], minor=True)
+    above.set_xlabel("reference power")
     axes.legend(frameon=False, loc="center left", bbox_to_anchor=(1, 0.5), fontsize=8)
     return figure
+
+
+def _round_values(low: float, high: float) -> list[float]:
+    """1, 2 and 5 times the powers of ten from low to high, both > 0; only the powers of ten where those are many."""
+    decades = range(math.floor(math.log10(low)), math.ceil(math.log10(high)) + 1)
+    digits = (1, 2, 5) if high < 300 * low else (1,)
+    values = [digit * 10.0**decade for decade in decades for digit in digits]
+    return [value for value in values if low <= value <= high]

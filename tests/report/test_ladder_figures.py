@@ -59,3 +59,15 @@ def test_the_trade_off_is_drawn_against_its_rooms() -> None:
     np.testing.assert_allclose(noise, trade.noise_lsb2 / 1e-3)
     assert set(room) == {1.0}
     assert len(chosen) == 2
+
+
+def test_the_upper_axis_puts_each_power_over_its_resistance() -> None:
+    plan = starter_plan(ladder={"end_resistance": 0})
+    trade = trade_off(plan, plan.datasheet, np.geomspace(10, 1e4, 300))
+    axes = ladder_figures.tradeoff_figure(trade, 0.1, 1e-3).axes[0]
+    above = axes.child_axes[0]
+    labels = [label.get_text() for label in above.get_xticklabels()]
+    places = dict(zip(labels, above.get_xticks(), strict=True))
+    # P = V^2 / R of 0.8 V.
+    assert places["1 mW"] == pytest.approx(640, rel=1e-3)
+    assert places["10 mW"] == pytest.approx(64, rel=1e-3)
